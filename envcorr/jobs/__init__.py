@@ -1,0 +1,1 @@
+"""The questions that can be asked, one file each; each returns a frozen result."""

@@ -1,0 +1,225 @@
+"""The Plan: what will be computed for one set-up, as a list of nodes, and how to run it on arrays."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+from typing import Any
+
+from envcorr.catalogue import Catalogue, Place
+from envcorr.effect import Answer, Check, Effect, Function
+from envcorr.estimate import Estimate, Value
+from envcorr.setup import Setup
+from envcorr.vocabulary import Varies
+
+__all__ = [
+    "NOTHING",
+    "Assumption",
+    "Leaf",
+    "Node",
+    "NotAssessed",
+    "Parts",
+    "Plan",
+    "PlannedCheck",
+    "PlannedEffect",
+    "Pull",
+]
+
+
+@dataclass(frozen=True, slots=True)
+class Leaf:
+    """A quantity that is drawn: its place, its distribution, and whether it was given, assumed or is internal."""
+
+    place: Place
+    estimate: Estimate
+    origin: str
+    node: int
+
+    @property
+    def name(self) -> str:
+        """The dotted name."""
+        return self.place.name
+
+    @property
+    def varies(self) -> Varies:
+        """Whether a repeat draws it anew; the error of a sensor stays."""
+        return "never" if self.place.sensor else self.place.quantity.varies
+
+
+@dataclass(frozen=True, slots=True)
+class Node:
+    """A call of ``function`` on earlier nodes, a leaf, or a constant; ``centre`` is its value at the best estimates."""
+
+    function: Function | None
+    inputs: tuple[int, ...]
+    centre: Any
+    leaf: int = -1
+
+
+@dataclass(frozen=True, slots=True)
+class Assumption:
+    """Something that was taken because nothing was said."""
+
+    name: str
+    label: str
+    source: str
+    estimate: Estimate | None = None
+    kind: str = ""
+    word: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class NotAssessed:
+    """An effect that could not be computed, and what would let it be."""
+
+    effect: Effect
+    lacks: tuple[str, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Pull:
+    """The nodes of one effect in one world; None where it does not act there."""
+
+    load: int | None
+    gain: int | None
+    gain_at_tare: int | None
+
+
+NOTHING = Pull(None, None, None)
+
+
+@dataclass(frozen=True, slots=True)
+class PlannedEffect:
+    """An effect with its nodes, true and (where it can be corrected for) known, and the ways its inputs took."""
+
+    effect: Effect
+    true: Pull
+    known: Pull | None
+    ways: tuple[str, ...]
+    answers: tuple[tuple[Answer, tuple[int, ...]], ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class PlannedCheck:
+    """A check with the nodes of its parameters."""
+
+    check: Check
+    where: str
+    names: tuple[str, ...]
+    inputs: tuple[int, ...]
+    kinds: tuple[str, ...]
+
+
+def _is_zero(value: Value) -> bool:
+    return isinstance(value, float) and value == 0.0
+
+
+def _sum(values: Sequence[Value]) -> Value:
+    """Return the sum; what is exactly nothing costs nothing."""
+    total: Value = 0.0
+    for value in values:
+        if not _is_zero(value):
+            total = value if _is_zero(total) else total + value
+    return total
+
+
+@dataclass(frozen=True, slots=True)
+class Parts:
+    """What the effects contribute, side by side: loads [kg], gains and their change since the tare (numbers)."""
+
+    mass: Value
+    definition: Value
+    tare_load: Value
+    loads: tuple[Value, ...]
+    gains: tuple[Value, ...]
+    gain_changes: tuple[Value, ...]
+
+    def effect(self, index: int, *, defines: bool = False) -> Value:
+        """Return what the effect alone adds to the net reading [kg]."""
+        load, gain, change = self.loads[index], self.gains[index], self.gain_changes[index]
+        error = load if _is_zero(gain) else load + gain * (self.mass + load)
+        return _sum([error, 0.0 if _is_zero(change) else change * self.tare_load, self.definition * defines])
+
+    def total(self, chosen: Sequence[int]) -> Value:
+        """Return what the chosen effects together add to the net reading [kg], over the measurand.
+
+        (1 + sum of gains) (m + sum of loads) - m, written without the cancellation; a gain that changed since the
+        tare reading acts on the container too.
+        """
+        load = _sum([self.loads[i] for i in chosen])
+        gain = _sum([self.gains[i] for i in chosen])
+        change = _sum([self.gain_changes[i] for i in chosen])
+        error = load if _is_zero(gain) else load + gain * (self.mass + load)
+        return _sum([error, 0.0 if _is_zero(change) else change * self.tare_load, self.definition])
+
+
+@dataclass(frozen=True)
+class Plan:
+    """What will be computed for one set-up, in order. Made by :func:`make_plan`."""
+
+    setup: Setup
+    catalogue: Catalogue
+    nodes: tuple[Node, ...]
+    leaves: tuple[Leaf, ...]
+    effects: tuple[PlannedEffect, ...]
+    not_assessed: tuple[NotAssessed, ...]
+    assumed: tuple[Assumption, ...]
+    unused: tuple[str, ...]
+    checks: tuple[PlannedCheck, ...]
+    targets: Mapping[str, int]
+    _order: tuple[int, ...] = field(repr=False)
+    _reach: tuple[frozenset[int], ...] = field(repr=False)
+
+    def evaluate(
+        self, leaf_values: Sequence[Value], *, base: Sequence[Any] | None = None, changed: int | None = None
+    ) -> list[Any]:
+        """Return the value of every node for the given values of the leaves (floats or broadcasting arrays).
+
+        With ``base`` (an earlier result) and ``changed`` (a leaf), only what that leaf reaches is run again.
+        """
+        values: list[Any] = [None] * len(self.nodes) if base is None else list(base)
+        order: Sequence[int] = self._order
+        if base is not None and changed is not None:
+            order = sorted(self._reach[changed])
+        for i in order:
+            node = self.nodes[i]
+            if node.leaf >= 0:
+                values[i] = leaf_values[node.leaf]
+            elif node.function is None:
+                values[i] = node.centre
+            else:
+                values[i] = node.function(*[values[j] for j in node.inputs])
+        return values
+
+    def centres(self) -> list[Any]:
+        """Return the value of every node at the best estimates."""
+        return [node.centre for node in self.nodes]
+
+    def reach(self, leaf: int) -> frozenset[int]:
+        """Return the nodes that rest on the leaf."""
+        return self._reach[leaf]
+
+    def reaches(self, leaf: int, effect: PlannedEffect) -> bool:
+        """Return whether the leaf enters the effect, as truth or as knowledge."""
+        reach = self._reach[leaf]
+        pulls = [effect.true] + ([effect.known] if effect.known else [])
+        return any(node in reach for p in pulls for node in (p.load, p.gain, p.gain_at_tare) if node is not None)
+
+    def parts(self, values: Sequence[Any], *, known: bool = False) -> Parts:
+        """Collect the effects' contributions from the nodes' values, as they are or as they are known."""
+
+        def value(node: int | None) -> Value:
+            found: Value = 0.0 if node is None else values[node]
+            return found
+
+        pulls = [(e.known or NOTHING) if known else e.true for e in self.effects]
+        return Parts(
+            mass=value(self.targets["mass"]),
+            definition=value(self.targets["known definition" if known else "definition"]),
+            tare_load=value(self.targets["known tare" if known else "tare"]),
+            loads=tuple(value(p.load) for p in pulls),
+            gains=tuple(value(p.gain) for p in pulls),
+            gain_changes=tuple(
+                0.0 if p.gain == p.gain_at_tare else value(p.gain) - value(p.gain_at_tare) for p in pulls
+            ),
+        )
