@@ -1,0 +1,188 @@
+"""One entry: text, number or table to an Estimate, checked against its quantity."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from typing import Any
+
+from envcorr import units
+from envcorr.catalogue import nearest
+from envcorr.errors import Fault, InputError
+from envcorr.estimate import SHAPES, Estimate, Shape
+from envcorr.numerals import quoted
+from envcorr.vocabulary import Quantity
+
+__all__ = ["EntryError", "read_estimate"]
+
+KEYS = ("value", "u", "U", "k", "half_width", "low", "high", "shape", "dof")
+SPREADS = ("u", "U", "half_width")
+SPREAD_EXAMPLES = {"pressure": "0.5 hPa", "fraction": "2 %", "density": "5 kg/m³", "mass": "10 µg"}
+TEACH = "Say which it is: u (standard uncertainty), U with k (expanded, from a certificate), or half_width (a limit ±)."
+
+
+class EntryError(InputError, ValueError):
+    """An entry that cannot be used."""
+
+    def __init__(self, problem: str, remedy: str = "") -> None:
+        self.problem, self.remedy = problem, remedy
+        super().__init__([Fault("", problem, remedy)])
+
+
+def read_estimate(raw: Any, quantity: Quantity, *, sensor: bool = False) -> Estimate:
+    """Return the estimate [SI] of a quantity from a text, a bare number or a table; of its sensor's error if so said.
+
+    A bare value is exact, but that of a limit is an unsigned bound: rectangular about zero. Raises
+    :class:`EntryError` or :class:`UnitError`, a sentence each.
+    """
+    if isinstance(raw, Mapping):
+        return _table(raw, quantity, sensor)
+    if isinstance(raw, bool) or not isinstance(raw, str | int | float):
+        raise EntryError(f"{_shown(raw)} is not a value.", f"Write {_example(quantity)}.")
+    if sensor:
+        raise EntryError(
+            f"{_shown(raw)} does not say what it is.",
+            f"{TEACH} For example {{ u = {_spread_example(quantity)} }}.",
+        )
+    value = units.parse(raw, quantity.kind)
+    if quantity.limit:
+        estimate = Estimate(0.0, "rectangular", abs(value)) if value else Estimate(0.0)
+    else:
+        estimate = Estimate(value)
+    return _inside(estimate, quantity)
+
+
+def _table(raw: Mapping[str, Any], quantity: Quantity, sensor: bool) -> Estimate:
+    for key in raw:
+        if key not in KEYS:
+            near = nearest(key, KEYS)
+            hint = f"Did you mean {near}?" if near else f"Known are {', '.join(KEYS)}."
+            raise EntryError(f"{quoted(str(key))} is not known in an entry.", hint)
+    stated = [key for key in SPREADS if key in raw]
+    if len(stated) > 1:
+        raise EntryError(f"{' and '.join(stated)} are given at once.", "Keep one. " + TEACH)
+    ends = [key for key in ("low", "high") if key in raw]
+    if ends and (stated or "value" in raw):
+        raise EntryError(f"{' and '.join(ends)} cannot go with value or a spread.", "Give low and high alone.")
+    if len(ends) == 1:
+        raise EntryError(f"{ends[0]} is given without the other end.", "Give low and high.")
+    shape = _shape(raw, "rectangular" if ends or "half_width" in raw else "normal")
+    dof = _dof(raw)
+    if ends:
+        return _inside(_between(raw, quantity, sensor, shape), quantity, sensor=sensor)
+    centre = _centre(raw, quantity, sensor)
+    if not stated:
+        if "shape" in raw or "dof" in raw or "k" in raw:
+            raise EntryError("a shape, dof or k is given without a spread.", TEACH)
+        return _inside(read_estimate(raw["value"], quantity), quantity)
+    key = stated[0]
+    spread = _spread(raw[key], quantity, key)
+    if key == "U":
+        spread /= _k(raw)
+    elif "k" in raw:
+        raise EntryError(f"k goes with U, not with {key}.", TEACH)
+    if key == "half_width":
+        if shape in ("normal", "log-uniform", "fixed"):
+            remedy = 'Use shape = "rectangular", "triangular" or "arcsine".'
+            raise EntryError(f"a half_width cannot be {quoted(shape)}.", remedy)
+    elif shape != "normal":
+        raise EntryError(
+            f"{key} belongs to a normal distribution, not {quoted(shape)}.", "Use half_width for that shape."
+        )
+    if dof < math.inf and shape != "normal":
+        raise EntryError("dof belongs to u or U.", "Leave it out.")
+    return _inside(Estimate(centre, shape, spread, dof) if spread else Estimate(centre), quantity, sensor=sensor)
+
+
+def _centre(raw: Mapping[str, Any], quantity: Quantity, sensor: bool) -> float:
+    if "value" not in raw:
+        if sensor or quantity.limit:
+            return 0.0
+        raise EntryError("has a spread but no value.", f"Add value = {_example(quantity)}.")
+    if sensor:  # a known offset of the sensor
+        return units.parse_spread(raw["value"], quantity.kind)
+    return units.parse(raw["value"], quantity.kind)
+
+
+def _between(raw: Mapping[str, Any], quantity: Quantity, sensor: bool, shape: Shape) -> Estimate:
+    read = units.parse_spread if sensor else units.parse
+    low, high = (read(raw[key], quantity.kind) for key in ("low", "high"))
+    if low > high:
+        raise EntryError(f"low ({_shown(raw['low'])}) is above high ({_shown(raw['high'])}).", "Swap them.")
+    if low == high:
+        return Estimate(low)
+    if shape in ("normal", "fixed"):
+        raise EntryError(
+            f"low and high do not make a {quoted(shape)} distribution.",
+            'Use shape = "rectangular", "triangular", "arcsine" or "log-uniform".',
+        )
+    if shape == "log-uniform" and low <= 0:
+        raise EntryError("a log-uniform distribution needs low above zero.", "Give a positive low.")
+    return Estimate.between(low, high, shape)
+
+
+def _shape(raw: Mapping[str, Any], default: Shape) -> Shape:
+    word = raw.get("shape", default)
+    for shape in SHAPES:
+        if word == shape and shape != "fixed":
+            return shape
+    near = nearest(str(word), SHAPES)
+    known = ", ".join(s for s in SHAPES if s != "fixed")
+    raise EntryError(f"shape {_shown(word)} is not known.", f"Did you mean {near}?" if near else f"Known are {known}.")
+
+
+def _dof(raw: Mapping[str, Any]) -> float:
+    if "dof" not in raw:
+        return math.inf
+    dof = units.parse(raw["dof"], "number")
+    if dof < 1:
+        raise EntryError("dof is below one.", "Degrees of freedom: readings less one.")
+    return dof
+
+
+def _k(raw: Mapping[str, Any]) -> float:
+    if "k" not in raw:
+        raise EntryError("U is given without k.", "Add the coverage factor of the certificate, usually k = 2.")
+    k = units.parse(raw["k"], "number")
+    if not 0.5 <= k <= 10:  # coverage factors of any use lie between (judgement)
+        raise EntryError(f"k = {k:g} is no coverage factor.", "It is usually 2.")
+    return k
+
+
+def _spread(raw: Any, quantity: Quantity, key: str) -> float:
+    if isinstance(raw, bool) or not isinstance(raw, str | int | float):
+        raise EntryError(f"{key} {_shown(raw)} is not a value.", f"Write {key} = {_spread_example(quantity)}.")
+    spread = units.parse_spread(raw, quantity.kind)
+    if spread < 0:
+        raise EntryError(f"{key} ({_shown(raw)}) is negative.", "A spread has no sign.")
+    return spread
+
+
+def _inside(estimate: Estimate, quantity: Quantity, *, sensor: bool = False) -> Estimate:
+    """Refuse what physics does not allow: the best estimate, and the ends of a bounded distribution."""
+    if sensor:
+        return estimate
+    for value in (estimate.centre, *estimate.bounds):
+        value = float(value)
+        if math.isinf(value) or quantity.low <= value <= quantity.high:
+            continue
+        low = value < quantity.low
+        bound = quantity.low if low else quantity.high
+        word = "below" if low else "above"
+        limit = "the smallest" if low else "the largest"
+        read, end = units.show(value, quantity.kind), units.show(bound, quantity.kind)
+        raise EntryError(f"{read} is {word} {end}, {limit} that is accepted.", quantity.hint)
+    return estimate
+
+
+def _example(quantity: Quantity) -> str:
+    return f'"{units.KINDS[quantity.kind].examples[0]}"'
+
+
+def _spread_example(quantity: Quantity) -> str:
+    kind = units.spread_kind(quantity.kind)
+    return f'"{SPREAD_EXAMPLES.get(kind, units.KINDS[kind].examples[0])}"'
+
+
+def _shown(raw: Any) -> str:
+    return quoted(raw) if isinstance(raw, str) else quoted(str(raw))
