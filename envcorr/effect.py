@@ -81,9 +81,10 @@ class Effect:
 
     ``own``: the balance's own part, not the surroundings'. ``correctable``: a correction can be computed.
     ``treatment``: what removes the effect, and ``leaves`` what remains then. ``needed``: "always", or the name of a
-    choice that makes the effect indispensable when it is "yes". ``when`` guards the whole effect by choices;
-    where it does not apply it is not listed. ``definition``: the difference between mass and measurand, where the
-    measurand is not the mass, is shown with this effect.
+    choice that makes the effect indispensable when it is "yes". ``when`` guards the whole effect by choices; where it
+    does not apply it is not listed. ``dof`` returns the degrees of freedom of its size, where they are known.
+    ``definition``: the difference between mass and measurand, where the measurand is not the mass, is shown with this
+    effect.
     """
 
     name: str
@@ -97,6 +98,7 @@ class Effect:
     ways: tuple[Way, ...] = ()
     checks: tuple[Check, ...] = ()
     answers: tuple[Answer, ...] = ()
+    dof: Function | None = None
     when: Mapping[str, tuple[str, ...]] | None = None
     own: bool = False
     correctable: bool = False

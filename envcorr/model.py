@@ -43,8 +43,9 @@ def _difference(first: Value, second: Value) -> Value:
 class _Planner:
     """Builds the node list of one plan; every quantity is resolved once a world."""
 
-    def __init__(self, setup: Setup, catalogue: Catalogue) -> None:
+    def __init__(self, setup: Setup, catalogue: Catalogue, *, read: bool = False) -> None:
         self.setup = setup
+        self.read = read
         self.catalogue = catalogue
         self.given = setup.estimates
         self.centres_given = {name: estimate.centre for name, estimate in setup.estimates.items()}
@@ -123,7 +124,9 @@ class _Planner:
                 return self.call(_add, (self.resolve(place), sensor))
         estimate = self.given.get(place.name)
         if estimate is not None:
-            return self._leaf(place, estimate, "given", known)
+            node = self._leaf(place, estimate, "given", known)
+            sensor = self._sensor(place) if self.read and estimate.is_exact and not known else None
+            return node if sensor is None else self.call(_add, (node, sensor))
         if place.moment:
             return self._resolve_moment(place, known)
         return self._resolve_present(place, known)
@@ -333,6 +336,15 @@ class _Planner:
                 return None
         return tuple(found)
 
+    def optional(self, name: str) -> int | None:
+        """Return the node of a quantity, or None where it is lacking; nothing is assumed for it."""
+        before = dict(self.assumed), set(self.choices_used)
+        try:
+            return self.resolve(Place(PRESENT, self.catalogue.quantities[name]))
+        except _LacksError:
+            self.assumed, self.choices_used = before
+            return None
+
     def check(self, check: Check, where: str, moment: Moment = PRESENT) -> PlannedCheck | None:
         inputs = self.inputs(check.function, moment)
         if inputs is None:
@@ -364,13 +376,20 @@ def plan_quantities(setup: Setup, names: Sequence[str], *, catalogue: Catalogue 
     return _finish(planner, targets, [], [], planner.way_checks())
 
 
-def make_plan(setup: Setup, *, catalogue: Catalogue = CATALOGUE, only: Callable[[Effect], bool] | None = None) -> Plan:
+def make_plan(
+    setup: Setup,
+    *,
+    catalogue: Catalogue = CATALOGUE,
+    only: Callable[[Effect], bool] | None = None,
+    read: bool = False,
+) -> Plan:
     """Work out what can be computed for the set-up, and from what.
 
-    ``only`` restricts the effects. Raises :class:`InputError` where there is no mass, or a measurand lacks what
-    defines it.
+    ``only`` restricts the effects. With ``read``, a value that was given bare is what the sensor read: it is uncertain
+    by the sensor's error, where one is stated; and volume, conventional mass and air density become targets too.
+    Raises :class:`InputError` where there is no mass, or a measurand lacks what defines it.
     """
-    planner = _Planner(setup, catalogue)
+    planner = _Planner(setup, catalogue, read=read)
     place = catalogue.place
     try:
         mass = planner.resolve(place("load_mass"))
@@ -398,6 +417,10 @@ def make_plan(setup: Setup, *, catalogue: Catalogue = CATALOGUE, only: Callable[
             targets[f"{head}tare"] = planner.resolve(place("container_mass"), known=world)
         except _LacksError:
             targets[f"{head}tare"] = planner.constant(0.0)
+    for name in ("load.volume", "load.conventional_mass", "air.density") if read else ():
+        node = planner.optional(name)
+        if node is not None:
+            targets[name] = node
     for name in ("target.resolution", "target.within", "target.probability", "target.relative_accuracy"):
         try:
             targets[name] = planner.resolve(catalogue.place(name.replace(".", "_")))
@@ -418,7 +441,8 @@ def make_plan(setup: Setup, *, catalogue: Catalogue = CATALOGUE, only: Callable[
         roots = [i for i in (true.load, true.gain, true.gain_at_tare) if i is not None]
         answers = [(answer, planner.inputs(answer.function)) for answer in effect.answers]
         found = tuple((answer, inputs) for answer, inputs in answers if inputs is not None)
-        effects.append(PlannedEffect(effect, true, known, planner.ways_of(roots), found))
+        dof = planner.inputs(effect.dof) if effect.dof else None
+        effects.append(PlannedEffect(effect, true, known, planner.ways_of(roots), found, dof))
         for check in effect.checks:
             planned = planner.check(check, effect.name)
             if planned:

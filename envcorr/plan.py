@@ -97,6 +97,7 @@ class PlannedEffect:
     known: Pull | None
     ways: tuple[str, ...]
     answers: tuple[tuple[Answer, tuple[int, ...]], ...] = ()
+    dof: tuple[int, ...] | None = None
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,8 +1,9 @@
 """Draws, Monte Carlo figures and first order. Knows quantities by number only, and no effect.
 
 Monte Carlo after JCGM 101:2008 on a randomised low-discrepancy sequence: batches of 2^10 points of one scrambled Sobol
-sequence, each batch with a random digital shift of its own (XOR), so that the batches are independent and unbiased
-and their scatter is an honest standard error (Owen, ACM Trans. Model. Comput. Simul. 13 (2003) 363, from memory).
+sequence, each batch with a random digital shift (XOR) and a random order of the rows of its own, so that the batches
+are independent and unbiased and their scatter is an honest standard error (Owen, ACM Trans. Model. Comput. Simul. 13 (2003)
+363, from memory).
 First order after JCGM 100:2008, clauses 5.1 and 5.2 and annex G.
 """
 
@@ -110,8 +111,11 @@ def draws(dimensions: int, batches: int = FIRST_BATCHES, seed: int = 0) -> Draws
     More batches leave the first ones as they are. The draws lie inside 0..1, both ends excluded.
     """
     base = _sobol(max(dimensions, 1), seed)
-    shifts = np.random.default_rng([seed, 1]).integers(0, 2**_BITS, size=(batches, base.shape[0]), dtype=np.uint64)
-    shifted = base[:, np.newaxis, :] ^ shifts.T[:, :, np.newaxis]
+    shape = (batches, base.shape[0])
+    shifts = np.random.default_rng([seed, 1]).integers(0, 2**_BITS, size=shape, dtype=np.uint64)
+    # two rows of the sequence may fit badly (a shift leaves that as it is): each batch deals the rows out anew
+    orders = np.argsort(np.random.default_rng([seed, 3]).random(shape), axis=1)
+    shifted = base[orders.T] ^ shifts.T[:, :, np.newaxis]
     uniform = (shifted.reshape(base.shape[0], -1).astype(np.float64) + 0.5) / 2.0**_BITS
     uniform.flags.writeable = False
     return Draws(uniform, seed)
@@ -258,21 +262,31 @@ def monte_carlo(
 ) -> Summary:
     """Propagate the distributions of ``estimates`` through ``function(x1, x2, ...)`` (JCGM 101:2008, clause 7).
 
-    Without ``batches`` their number doubles until twice the standard error of both end points is within the numerical
+    Without ``batches`` their number grows until twice the standard error of both end points is within the numerical
     tolerance of u to ``digits`` digits (clause 7.9), or 2^18 draws are reached.
     """
     count = batches or FIRST_BATCHES
     while True:
         drawn = draws(len(estimates), count, seed)
         result = summary(function(*drawn.place_all(estimates, correlation)), drawn.size, probability)
-        if batches or count >= MOST_BATCHES or is_settled(result, digits):
+        more = batches_to_settle(result, count, digits)
+        if batches or more <= count:
             return result
+        count = more
+
+
+def batches_to_settle(result: Summary, batches: int, digits: int) -> int:
+    """Return how many batches it takes for twice the standard errors of the end points to be within the tolerance.
+
+    The numerical tolerance is that of JCGM 101:2008, 7.9; the errors fall with the root of the number of batches. The
+    answer is a power of two times ``batches``, at most 256.
+    """
+    allowed = numerical_tolerance(result.u, digits)
+    excess = 2 * max(result.interval_error) / allowed if allowed else 0.0
+    count = batches
+    while count < MOST_BATCHES and excess > math.sqrt(count / batches):
         count *= 2
-
-
-def is_settled(result: Summary, digits: int) -> bool:
-    """Return whether twice the standard errors of the end points are within the numerical tolerance."""
-    return 2 * max(result.interval_error) <= numerical_tolerance(result.u, digits)
+    return count
 
 
 @dataclass(frozen=True, slots=True)
@@ -328,13 +342,24 @@ def budget(
     results = np.broadcast_to(np.asarray(outcome, dtype=np.float64), (2 * n + 1,))
     contributions = np.zeros(len(estimates))
     contributions[list(spread)] = (results[1 : n + 1] - results[n + 1 :]) / 2
+    return combine(float(results[0]), contributions, estimates, probability, correlation)
+
+
+def combine(
+    value: float,
+    contributions: Floats,
+    estimates: Sequence[Estimate],
+    probability: float = 0.95,
+    correlation: Floats | None = None,
+) -> Budget:
+    """Return the budget of contributions (sensitivity times u, signed): JCGM 100:2008, (13), and (G.2b) for the dof."""
     if correlation is None:
         u = math.sqrt(float(contributions @ contributions))
     else:
         u = math.sqrt(max(float(contributions @ correlation @ contributions), 0.0))
     weights = sum(c**4 / e.dof for c, e in zip(contributions, estimates, strict=True) if math.isfinite(e.dof))
-    dof = u**4 / weights if weights > 0 else math.inf  # Welch-Satterthwaite, (G.2b)
-    return Budget(float(results[0]), u, dof, coverage_factor(probability, dof), probability, contributions)
+    dof = u**4 / weights if weights > 0 else math.inf  # Welch-Satterthwaite
+    return Budget(value, u, dof, coverage_factor(probability, dof), probability, contributions)
 
 
 def first_order(

@@ -66,5 +66,16 @@ EFFECT = Effect(
             "repeatability. Take the standard deviation of ten net weighings at this load.",
             source="OIML R 76-1:2006, T.3.2 and T.4 define them apart (from memory)",
         ),
+        Check(
+            lambda load_mass, balance_max_capacity: load_mass > balance_max_capacity,
+            "The net load ({load_mass}) is more than the balance takes ({balance_max_capacity}).",
+            source="OIML R 76-1:2006, T.3.1.1 (from memory)",
+        ),
+        Check(
+            lambda load_mass, container_mass, balance_max_capacity: load_mass + container_mass > balance_max_capacity,
+            "Load and container together ({load_mass} and {container_mass}) are more than the balance takes "
+            "({balance_max_capacity}).",
+            source="OIML R 76-1:2006, T.3.1.1 (from memory)",
+        ),
     ),
 )

@@ -7,6 +7,7 @@ effect that names a treatment set to zero), each for the surroundings alone and 
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
@@ -24,6 +25,7 @@ from envcorr.propagation import (
     Budget,
     Summary,
     budget,
+    combine,
     interval_with,
     largest_with,
     numerical_tolerance,
@@ -175,13 +177,10 @@ def check_room(
     effects = tuple(replace(row, first_order_u=u) for row, u in zip(effects, single, strict=True))
     improve = min(effects, key=lambda row: row.e95_without).name if effects else ""
     whole = scope_of(plan, "whole")
-    least = minimum_weight(
-        plan, run.some_leaves[0], run.some.sets[0], probability=target.probability, accuracy=accuracy
-    )
-    exact = target.measurand == "difference"
-    first_result, second_result = (run.first, run.again) if exact else (run.some, run.some_again)
+    least = minimum_weight(plan, run.some_leaves, run.some.sets[0], probability=target.probability, accuracy=accuracy)
     together = run.first.error("as_read", whole)
     explained = sum(float(np.mean(run.first.effect("as_read", i))) for i in whole)
+    one, other = (run.result, None) if run.difference else (run.some_result, run.some_again)
     return RoomResult(
         setup=setup,
         plan=plan,
@@ -197,7 +196,7 @@ def check_room(
         treated=totals["treated"],
         difference_resolution={
             state: largest_with(
-                first_result.error(state, whole) - second_result.error(state, whole), target.probability
+                one.error(state, whole) - (other.error(state, whole) if other else 0.0), target.probability
             )
             for state in STATES
         },
@@ -234,7 +233,7 @@ def _target(plan: Plan) -> tuple[Target, float]:
 
 def _totals(run: Run, target: Target) -> dict[State, Total]:
     def total(state: State) -> Total:
-        errors = {scope: run.error(state, scope_of(run.plan, scope), target.measurand) for scope in SCOPES}
+        errors = {scope: run.result.error(state, scope_of(run.plan, scope)) for scope in SCOPES}
         surroundings, whole = (figures(errors[s], run.drawn.size, target, s) for s in SCOPES)
         return Total(surroundings, whole)
 
@@ -255,20 +254,19 @@ def _mean_square(error: Value) -> float:
 
 def _effect_rows(run: Run, target: Target, basis: State, decisive: Scope) -> tuple[EffectRow, ...]:
     plan, probability = run.plan, target.probability
-    totals = {scope: run.first.error(basis, scope_of(plan, scope)) for scope in SCOPES}
+    totals = {scope: run.result.error(basis, scope_of(plan, scope)) for scope in SCOPES}
     squares = {scope: _mean_square(total) for scope, total in totals.items()}
     known = plan.parts(plan.centres(), known=True)
-    several = len(run.first.sets) > 1  # an effect's own figures describe one weighing
-    one_weighing = Weighings(plan, run.first.sets[:1]) if several else run.first
-    some_weighing, another = (Weighings(plan, w.sets[:1]) for w in (run.some, run.some_again))
+    another = Weighings(plan, run.some_again.sets[:1])
     chosen = scope_of(plan, decisive)
     ratio = run.ratio(basis, chosen, probability)
     rows = []
     for i, planned in enumerate(plan.effects):
         effect = planned.effect
-        left = run.first.effect(basis, i)
-        one = one_weighing.effect("as_read", i)
-        change = some_weighing.effect("as_read", i) - another.effect("as_read", i)
+        left = run.result.effect(basis, i)
+        one = run.first.effect("as_read", i)  # an effect's own figures describe one weighing
+        others = [j for j in chosen if j != i]
+        change = run.some.effect("as_read", i) - another.effect("as_read", i)
         rows.append(
             EffectRow(
                 name=effect.name,
@@ -283,7 +281,7 @@ def _effect_rows(run: Run, target: Target, basis: State, decisive: Scope) -> tup
                     for scope in SCOPES
                     if scope == "whole" or not effect.own
                 },
-                e95_without=ratio * largest_with(run.some.error(basis, [j for j in chosen if j != i]), probability),
+                e95_without=ratio * largest_with(run.some_result.error(basis, others), probability),
                 correction=-float(known.effect(i, defines=effect.definition)) if effect.correctable else None,
                 treatment=effect.treatment,
                 leaves=effect.leaves,
@@ -312,7 +310,7 @@ def _quantity_rows(
 ) -> tuple[QuantityRow, ...]:
     plan, probability = run.plan, target.probability
     chosen = scope_of(plan, decisive)
-    before = run.some.error(basis, chosen)
+    before = run.some_result.error(basis, chosen)
     square = _mean_square(before)
     ratio = run.ratio(basis, chosen, probability)
     rows = []
@@ -360,8 +358,16 @@ def _first_order(run: Run, basis: State, whole: Summary, correlation: Any) -> tu
         return budget(outcome, estimates, spread, probability=whole.probability, correlation=correlation)
 
     total = found(weighing.error(basis, scope_of(plan, "whole")))
+    if run.difference:
+        total = _of_difference(total, plan, estimates, correlation)
     single = [found(weighing.effect("as_read", i)).u for i in range(len(plan.effects))]
     low, high = total.interval
     difference = abs(low - whole.interval[0]), abs(high - whole.interval[1])
     tolerance = numerical_tolerance(total.u, 1)
     return single, FirstOrder(total, difference, tolerance, max(difference) <= tolerance, ())
+
+
+def _of_difference(single: Budget, plan: Plan, estimates: Sequence[Estimate], correlation: Any) -> Budget:
+    """Return the first-order budget of the difference of two results: what never varies cancels."""
+    twice = np.array([0.0 if leaf.varies == "never" else np.sqrt(2.0) for leaf in plan.leaves])
+    return combine(0.0, single.contributions * twice, estimates, single.probability, correlation)

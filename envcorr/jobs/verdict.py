@@ -113,7 +113,7 @@ def judge(run: Run, target: Target, state: State, without: Sequence[int] = ()) -
 
     def passes(scope: Scope) -> bool | None:
         chosen = [i for i in scope_of(run.plan, scope) if i not in without]
-        error = run.error(state, chosen, target.measurand)
+        error = run.result.error(state, chosen)
         return _passes(*share_within(error, target.bound(scope), run.drawn.size), target)
 
     return _both(passes("surroundings"), passes("whole"))
@@ -122,7 +122,7 @@ def judge(run: Run, target: Target, state: State, without: Sequence[int] = ()) -
 def treatments(run: Run, target: Target) -> tuple[int, ...]:
     """Return the fewest treatable effects that must be treated, the largest first, for the corrected total to pass."""
     able = [i for i, planned in enumerate(run.plan.effects) if planned.effect.treatment]
-    size = {i: largest_with(run.first.effect("corrected", i), target.probability) for i in able}
+    size = {i: largest_with(run.result.effect("corrected", i), target.probability) for i in able}
     chosen: list[int] = []
     for i in sorted(able, key=lambda i: -size[i]):
         chosen.append(i)
@@ -196,8 +196,8 @@ def _reason(run: Run, target: Target, state: State, treat: Sequence[int]) -> str
 
 
 def _followed(run: Run, index: int, small: float) -> bool:
-    read = largest_with(run.first.effect("as_read", index), 0.95)
-    left = largest_with(run.first.effect("corrected", index), 0.95)
+    read = largest_with(run.result.effect("as_read", index), 0.95)
+    left = largest_with(run.result.effect("corrected", index), 0.95)
     return read - left > small
 
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from functools import cached_property
 from typing import Any, Literal
@@ -15,10 +15,9 @@ from envcorr.plan import Leaf, Parts, Plan
 from envcorr.propagation import (
     BATCH,
     FIRST_BATCHES,
-    MOST_BATCHES,
     Draws,
+    batches_to_settle,
     draws,
-    is_settled,
     largest_with,
     summary,
 )
@@ -34,10 +33,14 @@ FEW_BATCHES = 4
 
 @dataclass(frozen=True)
 class Weighings:
-    """The nodes' values for some net weighings of one result: one set, or as many as are averaged."""
+    """The nodes' values for the net weighings of one result: one set, or as many as are averaged.
+
+    For a difference, ``less`` holds those of the second result, which is taken away.
+    """
 
     plan: Plan
     sets: tuple[list[Any], ...]
+    less: Weighings | None = None
 
     @cached_property
     def parts(self) -> list[tuple[Parts, Parts]]:
@@ -46,6 +49,10 @@ class Weighings:
 
     def mean(self, of: Callable[[Parts, Parts], Value]) -> Value:
         """Return the mean over the weighings of something computed from the true and the known parts."""
+        mean = self._mean(of)
+        return mean - self.less.mean(of) if self.less else mean
+
+    def _mean(self, of: Callable[[Parts, Parts], Value]) -> Value:
         if len(self.parts) == 1:
             return of(*self.parts[0])
         total: Value = 0.0
@@ -72,41 +79,84 @@ class Weighings:
 
 
 class Run:
-    """The weighings of one plan on one set of draws."""
+    """The weighings of one plan on one set of draws.
 
-    def __init__(self, plan: Plan, drawn: Draws, correlation: Any, repeats: int) -> None:
+    ``first`` is a single weighing; ``result`` what is reported (the mean of the repeats, less that of the second result
+    where a difference is asked for); ``some`` and ``some_result`` are the same on a few of the draws, enough to rank
+    what spoils them at a quarter of the time.
+    """
+
+    def __init__(
+        self, plan: Plan, drawn: Draws, correlation: Any, repeats: int = 1, *, difference: bool = False
+    ) -> None:
         keep_freed_memory()
-        self.plan, self.drawn, self.repeats = plan, drawn, repeats
+        self.plan, self.drawn, self.repeats, self.difference = plan, drawn, repeats, difference
         self.leaf_values = [
             inside_physics(value, leaf)
             for value, leaf in zip(
-                drawn.place_all([leaf.estimate for leaf in plan.leaves], correlation),
-                plan.leaves,
-                strict=True,
+                drawn.place_all([leaf.estimate for leaf in plan.leaves], correlation), plan.leaves, strict=True
             )
         ]
         self.base = plan.evaluate(self.leaf_values)
-        self.first = Weighings(plan, (self.base, *(self._redrawn(k) for k in range(1, repeats))))
-        # the same on a few of the draws: enough to rank what spoils them, at a quarter of the time
-        self.some_leaves = [few(self.leaf_values), *(few(self._redraw(k)) for k in range(1, repeats))]
-        self.some = Weighings(plan, tuple(few(values) for values in self.first.sets))
+        self.first = Weighings(plan, (self.base,))
+        self.some = Weighings(plan, (few(self.base),))
+        again = range(repeats, 2 * repeats)
+        numbers = (*range(repeats), *again) if difference else range(repeats)
+        self._some_leaves = {k: few(self._redraw(k)) for k in {*numbers, *again}}
+
+    @cached_property
+    def result(self) -> Weighings:
+        """What is reported, on all draws."""
+        sets = tuple(self._redrawn(k) for k in range(self.repeats))
+        return Weighings(self.plan, sets, self.again if self.difference else None)
 
     @cached_property
     def again(self) -> Weighings:
-        """Another result of the same load: all drawn anew that varies."""
+        """A second result of the same load: all drawn anew that varies."""
         return Weighings(self.plan, tuple(self._redrawn(k) for k in range(self.repeats, 2 * self.repeats)))
 
     @cached_property
     def some_again(self) -> Weighings:
         """The same on a few of the draws."""
-        numbers = range(self.repeats, 2 * self.repeats)
-        return Weighings(self.plan, tuple(self.plan.evaluate(few(self._redraw(k))) for k in numbers))
+        return Weighings(self.plan, tuple(self._some_sets(range(self.repeats, 2 * self.repeats), ())))
+
+    @cached_property
+    def some_result(self) -> Weighings:
+        """What is reported, on a few of the draws."""
+        return self.with_fixed(())
+
+    def with_fixed(self, rows: Sequence[int]) -> Weighings:
+        """Return :attr:`some_result` with some quantities at their best estimates."""
+        sets = tuple(self._some_sets(range(self.repeats), rows))
+        again = range(self.repeats, 2 * self.repeats)
+        less = Weighings(self.plan, tuple(self._some_sets(again, rows))) if self.difference else None
+        return Weighings(self.plan, sets, less)
+
+    @cached_property
+    def _some_bases(self) -> dict[int, list[Any]]:
+        found = {k: self.plan.evaluate(leaves) for k, leaves in self._some_leaves.items() if k}
+        return {0: self.some.sets[0], **found}
+
+    def _some_sets(self, numbers: Sequence[int], rows: Sequence[int]) -> Iterator[list[Any]]:
+        for k in numbers:
+            leaf_values, values = list(self._some_leaves[k]), self._some_bases[k]
+            for row in rows:
+                leaf_values[row] = self.plan.leaves[row].estimate.centre
+                values = self.plan.evaluate(leaf_values, base=values, changed=row)
+            yield values
+
+    @property
+    def some_leaves(self) -> list[Value]:
+        """The leaves of :attr:`some`."""
+        return self._some_leaves[0]
 
     def _redrawn(self, number: int) -> list[Any]:
-        return self.plan.evaluate(self._redraw(number))
+        return self.plan.evaluate(self._redraw(number)) if number else self.base
 
     def _redraw(self, number: int) -> list[Value]:
         """Return the leaves in another order where they vary, so that they are independent of the first."""
+        if number == 0:
+            return self.leaf_values
         order = self.drawn.shuffled(number)
         return [
             value[order] if isinstance(value, np.ndarray) and leaf.varies != "never" else value
@@ -115,24 +165,8 @@ class Run:
 
     def ratio(self, state: State, chosen: Sequence[int], probability: float) -> float:
         """Return the e95 of all draws over that of a few: on common draws it is steadier than either."""
-        part = largest_with(self.some.error(state, chosen), probability)
-        return largest_with(self.first.error(state, chosen), probability) / part if part else 1.0
-
-    def with_fixed(self, rows: Sequence[int]) -> Weighings:
-        """Return :attr:`some` with some quantities at their best estimates."""
-        sets = []
-        for leaves, base in zip(self.some_leaves, self.some.sets, strict=True):
-            leaf_values, values = list(leaves), base
-            for row in rows:
-                leaf_values[row] = self.plan.leaves[row].estimate.centre
-                values = self.plan.evaluate(leaf_values, base=values, changed=row)
-            sets.append(values)
-        return Weighings(self.plan, tuple(sets))
-
-    def error(self, state: State, chosen: Sequence[int], measurand: str) -> Value:
-        """Return the error of the chosen effects [kg]; for a difference, of the first weighing less the second."""
-        error = self.first.error(state, chosen)
-        return error - self.again.error(state, chosen) if measurand == "difference" else error
+        part = largest_with(self.some_result.error(state, chosen), probability)
+        return largest_with(self.result.error(state, chosen), probability) / part if part else 1.0
 
 
 def few(values: Sequence[Any]) -> list[Any]:
@@ -168,13 +202,14 @@ def run_weighings(
     """Draw the weighings of a plan: ``wanted`` draws, or as many as the figures of the whole error need to settle."""
     batches = FIRST_BATCHES if wanted is None else max(FIRST_BATCHES, -(-wanted // BATCH))
     while True:
-        run = Run(plan, draws(len(plan.leaves), batches, seed), correlation, repeats)
-        if wanted is not None or batches >= MOST_BATCHES:
+        drawn = draws(len(plan.leaves), batches, seed)
+        run = Run(plan, drawn, correlation, repeats, difference=measurand == "difference")
+        if wanted is not None:
             return run
+        whole = scope_of(plan, "whole")
         looked_at: tuple[State, ...] = ("as_read", "corrected")
-        if all(
-            is_settled(summary(run.error(state, scope_of(plan, "whole"), measurand), run.drawn.size, probability), 2)
-            for state in looked_at
-        ):
+        figures = (summary(run.result.error(state, whole), drawn.size, probability) for state in looked_at)
+        more = max(batches_to_settle(found, batches, 2) for found in figures)
+        if more <= batches:
             return run
-        batches *= 2
+        batches = more

@@ -1,0 +1,1 @@
+"""Speed as ratios, both sides measured in turn in one run: ``python -m benchmarks``."""

@@ -1,0 +1,225 @@
+"""The command line: parse, call a job, render, set the exit code.
+
+Exit codes: 0 answered; 1 a fault of the program; 2 the input could not be used, and nothing was written; 3 answered
+"not reached" or "undecided" where ``--strict`` was asked for; 130 interrupted.
+"""
+
+from __future__ import annotations
+
+import os
+import sys
+from collections.abc import Callable, Sequence
+from typing import TYPE_CHECKING, Any, TypeVar
+
+import click
+
+import envcorr
+
+if TYPE_CHECKING:
+    from envcorr.document.blocks import Block
+
+__all__ = ["cli", "main"]
+
+Command = TypeVar("Command", bound=Callable[..., Any])
+
+AIR_OPTIONS = {
+    "temperature": "Air temperature.",
+    "pressure": "Air pressure at the balance (station pressure).",
+    "sea_level_pressure": "Air pressure reduced to sea level; needs --altitude.",
+    "altitude": "Height of the balance above sea level.",
+    "humidity": "Relative humidity.",
+    "dew_point": "Dew point, instead of the humidity.",
+    "wet_bulb": "Wet-bulb temperature, instead of the humidity.",
+    "co2": "CO2 content; not given, an occupied room is assumed.",
+    "density": "Air density, where it is known directly.",
+    "formula": '"CIPM-2007" (if not said) or "OIML R 111-1".',
+}
+STRICT_ANSWERS = ("not reached", "undecided")
+
+
+class _Fault(click.ClickException):
+    """The end of a command with a message to stderr; a fault of the program."""
+
+    exit_code = 1
+
+    def show(self, file: Any = None) -> None:
+        # nothing that a terminal would obey, whatever the file held
+        text = "".join(s if s.isprintable() or s == "\n" else "\N{REPLACEMENT CHARACTER}" for s in self.message)
+        click.echo(f"envcorr: {text}", file=file, err=file is None)
+
+
+class _Unusable(_Fault):
+    """The input could not be used."""
+
+    exit_code = 2
+
+
+class _Group(click.Group):
+    """Turns exceptions into a message and an exit code."""
+
+    def invoke(self, ctx: click.Context) -> Any:
+        try:
+            return super().invoke(ctx)
+        except (click.ClickException, click.Abort, click.exceptions.Exit):
+            raise
+        except Exception as error:
+            raise _stop(error) from error
+
+
+def _stop(error: Exception) -> Exception:
+    from envcorr.errors import InputError, NotComputedError
+
+    if isinstance(error, InputError | NotComputedError):
+        return _Unusable(str(error))
+    if os.environ.get("ENVCORR_DEBUG"):
+        return error
+    reason = " ".join(str(error).split())[:200]
+    return _Fault(
+        f"a fault of the program, not of the input: {type(error).__name__}: {reason}\n"
+        "Nothing was written. With ENVCORR_DEBUG=1 set it tells where."
+    )
+
+
+def _json_option(function: Command) -> Command:
+    return click.option("--json", "as_json", is_flag=True, help="Print JSON, in full precision.")(function)
+
+
+def _set_option(function: Command) -> Command:
+    return click.option(
+        "--set",
+        "changes",
+        multiple=True,
+        metavar="NAME=VALUE",
+        help='Give or change a quantity, as in --set air.temperature="22 °C"; may be repeated.',
+    )(function)
+
+
+def _air_options(function: Command) -> Command:
+    for name, text in reversed(AIR_OPTIONS.items()):
+        function = click.option(f"--{name.replace('_', '-')}", name, metavar="TEXT", help=text)(function)
+    return function
+
+
+@click.group(cls=_Group, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
+@click.version_option(envcorr.__version__, prog_name="envcorr", message="%(prog)s %(version)s")
+def cli() -> None:
+    """What the surroundings do to a high-resolution weighing.
+
+    Values are texts with a unit ("20.3 °C", "1013 hPa", "45 %"), or tables with their uncertainty:
+    '{value = "20.3 °C", u = "0.1 K"}'.
+    """
+
+
+@cli.command()
+@_air_options
+@click.option("--setup", metavar="FILE", help="A set-up file whose air is meant; the options change it.")
+@_set_option
+@_json_option
+def air(setup: str | None, changes: Sequence[str], as_json: bool, **given: str | None) -> None:
+    """Air density and its uncertainty."""
+    from envcorr.intake.setup_file import parse_setup, read_setup
+    from envcorr.jobs.air import air_density
+
+    every = [*(f"air.{name}={text}" for name, text in given.items() if text is not None), *changes]
+    if setup is None:
+        read = parse_setup({}, changes=every, require=(), what="the options")
+    else:
+        read = read_setup(setup, changes=every, require=())
+    result = air_density(read)
+    if as_json:
+        from envcorr.render import json
+
+        _emit_json(json.air(result))
+    else:
+        from envcorr.document import air as page
+
+        _emit_blocks(page.document(result))
+
+
+@cli.command()
+@click.argument("setup", metavar="SETUP.toml")
+@_set_option
+@click.option("--strict", is_flag=True, help='Exit with 3 on "not reached" and "undecided".')
+@click.option("--as-read", is_flag=True, help="Rank what spoils it by the reading as it is, not as corrected.")
+@click.option("--draws", type=click.IntRange(1, 2**20), help="Number of Monte Carlo draws (at least 16384).")
+@click.option("--seed", type=click.IntRange(min=0), default=0, show_default=True, help="Of the draws.")
+@_json_option
+@click.pass_context
+def room(
+    ctx: click.Context,
+    setup: str,
+    changes: Sequence[str],
+    strict: bool,
+    as_read: bool,
+    draws: int | None,
+    seed: int,
+    as_json: bool,
+) -> None:
+    """Can this room reach the target, and what spoils it?"""
+    from envcorr.intake.setup_file import read_setup
+    from envcorr.jobs.room import check_room
+
+    result = check_room(read_setup(setup, changes=changes), draws=draws, seed=seed, as_read=as_read)
+    if as_json:
+        from envcorr.render import json
+
+        _emit_json(json.room(result))
+    else:
+        from envcorr.document import room as page
+
+        _emit_blocks(page.document(result))
+    if strict and result.verdict.answer in STRICT_ANSWERS:
+        ctx.exit(3)
+
+
+@cli.command()
+@click.argument("name", required=False)
+@_json_option
+def explain(name: str | None, as_json: bool) -> None:
+    """Explain a quantity, a choice or an effect.
+
+    Without a name, all of them are listed.
+    """
+    from envcorr.document import explain as page
+
+    subject = None if name is None else page.look_up(name)
+    if as_json:
+        from envcorr.render import json_explain
+
+        _emit_json(json_explain.explain(subject))
+    else:
+        _emit_blocks(page.overview() if subject is None else page.document(subject))
+
+
+def _emit_blocks(blocks: Sequence[Block]) -> None:
+    from envcorr.render.terminal import render_for
+
+    _emit(render_for(blocks, sys.stdout))
+
+
+def _emit_json(document: dict[str, Any]) -> None:
+    from envcorr.render.json import dumps
+
+    _emit(dumps(document, encoding=sys.stdout.encoding or "ascii") + "\n")
+
+
+def _emit(text: str) -> None:
+    """Write to standard output; whoever reads it may stop early."""
+    try:
+        sys.stdout.write(text)
+        sys.stdout.flush()
+    except BrokenPipeError:
+        # else the interpreter would complain when it flushes at its end
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+
+
+def main(args: Sequence[str] | None = None) -> None:
+    """Run the command line and exit."""
+    try:
+        code = cli.main(args, prog_name="envcorr", standalone_mode=False)
+    except click.ClickException as error:
+        error.show()
+        code = error.exit_code
+    except click.Abort:
+        code = 130
+    sys.exit(code if isinstance(code, int) else 0)

@@ -1,0 +1,133 @@
+"""What a document is made of. A block says what is to be told, never how a face shows it.
+
+All text is plain text, without markup of any kind; every number in it is rounded and has its unit.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Literal, TypeAlias
+
+__all__ = [
+    "Align",
+    "Block",
+    "Cell",
+    "Column",
+    "Figure",
+    "Figures",
+    "Group",
+    "Heading",
+    "Item",
+    "Listing",
+    "Note",
+    "Notices",
+    "Table",
+    "Text",
+    "Tone",
+    "Verdict",
+]
+
+Tone = Literal["good", "caution", "bad", "open"]
+Align = Literal["left", "right", "bar"]
+Cell: TypeAlias = str | float | None
+"""A text; in a column of bars a length from -1 to 1, or None for no bar. A negative bar takes away."""
+
+
+@dataclass(frozen=True, slots=True)
+class Heading:
+    """A heading; level 1 is the title of the document."""
+
+    text: str
+    level: int = 2
+
+
+@dataclass(frozen=True, slots=True)
+class Text:
+    """A paragraph; ``quiet`` where it may be passed over."""
+
+    text: str
+    quiet: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class Verdict:
+    """The answer in a few words, its tone, and the sentences that belong to it."""
+
+    answer: str
+    tone: Tone
+    sentences: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Figure:
+    """One figure with its unit, and what must be known to read it."""
+
+    label: str
+    value: str
+    note: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Figures:
+    """A few figures, one under the other."""
+
+    figures: tuple[Figure, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Column:
+    """A column of a table. The numbers of a right-aligned column have equally many decimals."""
+
+    title: str
+    align: Align = "left"
+
+
+@dataclass(frozen=True, slots=True)
+class Group:
+    """Rows of a table that belong together, under a title of their own (or none)."""
+
+    rows: tuple[tuple[Cell, ...], ...]
+    title: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Table:
+    """A table; ``caption`` tells how to read it."""
+
+    columns: tuple[Column, ...]
+    groups: tuple[Group, ...]
+    caption: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Item:
+    """A term and what is to be said about it."""
+
+    term: str
+    text: str
+
+
+@dataclass(frozen=True, slots=True)
+class Listing:
+    """Terms with their texts."""
+
+    items: tuple[Item, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Note:
+    """One notice: the sentence, and where it comes from."""
+
+    sentence: str
+    source: str = ""
+    level: Literal["warning", "info", "caution"] = "warning"
+
+
+@dataclass(frozen=True, slots=True)
+class Notices:
+    """What was computed with a reservation, and what to take care of."""
+
+    notes: tuple[Note, ...]
+
+
+Block: TypeAlias = Heading | Text | Verdict | Figures | Table | Listing | Notices
