@@ -4,7 +4,21 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-__all__ = ["Constant"]
+__all__ = [
+    "AIR_BREAKDOWN_FIELD",
+    "CIPM_RELATIVE_U",
+    "CONVENTIONAL_AIR_DENSITY",
+    "CONVENTIONAL_WEIGHT_DENSITY",
+    "COOLPROP_AIR_RELATIVE_U",
+    "DRY_AIR_GAS_CONSTANT",
+    "OIML_AIR_RELATIVE_DEPARTURE",
+    "STANDARD_GRAVITY",
+    "STANDARD_PRESSURE",
+    "STEFAN_BOLTZMANN",
+    "VACUUM_PERMITTIVITY",
+    "ZERO_CELSIUS",
+    "Constant",
+]
 
 
 @dataclass(frozen=True, slots=True)

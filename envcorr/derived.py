@@ -225,6 +225,7 @@ _VOLUME_AND_DENSITY = Check(
     "load.mass over load.volume is not load.density ({load_density}): the volume ({load_volume}) was used. A foam with "
     "closed cells displaces air with its cells too, so the density of its polymer would be the wrong one.",
     source="a difference of 5 % (judgement)",
+    only_if=lambda given: "load.volume" in given,
 )
 _FOAM_LIKE = Check(
     lambda load_density: load_density < 300,
@@ -246,6 +247,7 @@ _SAME_AIR = Check(
     "change within a weighing, give cycle.temperature_change and cycle.pressure_change (or [tare.air]).",
     source="the air on a container of 100 cm³ changes by 0.12 mg per hPa of pressure (CIPM-2007)",
     level="info",
+    only_if=_same_air,
 )
 
 _CIPM = "Picard et al., Metrologia 45 (2008) 149"
@@ -419,18 +421,21 @@ WAYS: tuple[Way, ...] = (
         lambda container_outer_volume: container_outer_volume,
         "the outer volume of a container kept shut",
         when={"container.closed": ("kept shut",)},
+        checks=(_SAME_AIR,),
     ),
     Way(
         "container.displaced_volume",
         lambda container_mass, container_density: container_mass / container_density,
         "the walls: mass over density",
         when={"container.closed": ("never", "each time")},
+        checks=(_SAME_AIR,),
     ),
     Way(
         "container.displaced_volume",
         lambda container_outer_volume, container_inner_volume: container_outer_volume - container_inner_volume,
         "the walls: outer less inner volume",
         when={"container.closed": ("never", "each time")},
+        checks=(_SAME_AIR,),
     ),
     Way(
         "container.displaced_volume",

@@ -31,12 +31,14 @@ class Check:
 
     ``function`` takes quantities and returns True where there is something to say; ``sentence`` may name those
     quantities in braces, ``{air_temperature}`` being printed with its unit. On draws the notice carries a share.
+    ``only_if`` sees the best estimates that were given (name to SI value) and may decline.
     """
 
     function: Function
     sentence: str
     source: str = ""
     level: str = "warning"
+    only_if: Callable[[Mapping[str, Any]], bool] | None = None
 
 
 @dataclass(frozen=True, slots=True)

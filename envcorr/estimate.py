@@ -14,7 +14,7 @@ from typing import Any, Literal, TypeAlias
 import numpy as np
 from numpy.typing import NDArray
 
-__all__ = ["SHAPES", "Estimate", "Shape", "Value"]
+__all__ = ["SHAPES", "Estimate", "Shape", "Value", "standard_score"]
 
 Value: TypeAlias = float | NDArray[np.float64]
 """A float or an array of floats, in SI units; functions of Values broadcast."""

@@ -54,9 +54,8 @@ class _Planner:
         self.keys: dict[Any, int] = {}
         self.memo: dict[tuple[str, bool], int | _LacksError] = {}
         self.stack: list[str] = []
-        self.ways_used: dict[str, list[tuple[Way, Place]]] = {}
+        self.ways_used: dict[str, list[tuple[Way, Place, int]]] = {}
         self.assumed: dict[str, Assumption] = {}
-        self.choices_used: set[str] = set()
 
     # nodes -----------------------------------------------------------------------------------------------------
 
@@ -87,7 +86,6 @@ class _Planner:
     def word(self, name: str) -> str:
         """Return what was chosen; a default that counts is listed as assumed."""
         choice = self.catalogue.choices[name]
-        self.choices_used.add(name)
         if name not in self.setup.choices and choice.default:
             self.assumed.setdefault(name, Assumption(name, choice.label, choice.source, word=choice.default))
         return self.setup.choices.get(name, choice.default)
@@ -230,8 +228,8 @@ class _Planner:
         node = self.call(way.function, tuple(inputs))
         if not known:
             used = self.ways_used.setdefault(way.gives, [])
-            if (way, place) not in used:
-                used.append((way, place))
+            if (way, place, node) not in used:
+                used.append((way, place, node))
         return node
 
     def best(self, place: Place) -> int:
@@ -306,7 +304,7 @@ class _Planner:
             pending.extend(node.inputs)
         labels: dict[str, None] = {}
         for used in self.ways_used.values():
-            for way, place in used:
+            for way, place, _ in used:
                 if id(way.function) in functions:
                     quantity = self.catalogue.find(way.gives)
                     name = quantity.label if quantity else way.gives
@@ -318,12 +316,12 @@ class _Planner:
     def way_checks(self) -> list[PlannedCheck]:
         """Return the checks of every way that was taken, at the moments at which it was taken."""
         used = [pair for pairs in self.ways_used.values() for pair in pairs]
-        found = [self.check(check, way.gives, at.moment) for way, at in used for check in way.checks]
+        found = [self.check(check, way.gives, at.moment) for way, at, _ in used for check in way.checks]
         return [planned for planned in found if planned]
 
     def inputs(self, function: Function, moment: Moment = PRESENT) -> tuple[int, ...] | None:
         """Return the nodes of a function's parameters, or None where one is lacking; nothing is assumed for it."""
-        before = dict(self.assumed), set(self.choices_used)
+        before = dict(self.assumed)
         found = []
         for name in parameters(function):
             place = self.catalogue.place(name)
@@ -332,20 +330,22 @@ class _Planner:
             try:
                 found.append(self.resolve(place))
             except _LacksError:
-                self.assumed, self.choices_used = before
+                self.assumed = before
                 return None
         return tuple(found)
 
     def optional(self, name: str) -> int | None:
         """Return the node of a quantity, or None where it is lacking; nothing is assumed for it."""
-        before = dict(self.assumed), set(self.choices_used)
+        before = dict(self.assumed)
         try:
             return self.resolve(Place(PRESENT, self.catalogue.quantities[name]))
         except _LacksError:
-            self.assumed, self.choices_used = before
+            self.assumed = before
             return None
 
     def check(self, check: Check, where: str, moment: Moment = PRESENT) -> PlannedCheck | None:
+        if check.only_if and not check.only_if(self.centres_given):
+            return None
         inputs = self.inputs(check.function, moment)
         if inputs is None:
             return None
@@ -450,6 +450,16 @@ def make_plan(
     return _finish(planner, targets, effects, missing, checks + planner.way_checks())
 
 
+def _words_that_matter(planner: _Planner, needed: set[int], effects: Sequence[PlannedEffect]) -> set[str]:
+    """Return the choices on which what will be computed depends."""
+    taken = [way.when for used in planner.ways_used.values() for way, _, node in used if node in needed]
+    missing = {n.name for n in planner.catalogue.effects.values()} - {e.effect.name for e in effects}
+    ruled = [e.effect.when for e in effects]
+    ruled += [e.when for e in planner.catalogue.effects.values() if e.name in missing and not planner.applies(e.when)]
+    names = {"target.measurand", "adjusted.when", *(e.needed for e in planner.catalogue.effects.values())}
+    return names.union(*(when or {} for when in (*taken, *ruled)))
+
+
 def _finish(
     planner: _Planner,
     targets: dict[str, int],
@@ -482,9 +492,11 @@ def _finish(
             reach[leaf].add(i)
     setup = planner.setup
     used = {leaf.name for leaf, nodes in zip(planner.leaves, reach, strict=True) if nodes}
+    words = _words_that_matter(planner, needed, effects)
     unused = [name for name in setup.estimates if name not in used]
-    unused += [name for name in setup.choices if name not in planner.choices_used]
-    assumed = [a for a in planner.assumed.values() if a.word or a.name in used]
+    guards = {name for effect in planner.catalogue.effects.values() for name in effect.when or {}}
+    unused += [name for name in setup.choices if name not in words | guards]
+    assumed = [a for a in planner.assumed.values() if a.name in (words if a.word else used)]
     return Plan(
         setup=setup,
         catalogue=planner.catalogue,

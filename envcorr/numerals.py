@@ -11,7 +11,7 @@ from fractions import Fraction
 
 from envcorr.errors import Fault, InputError
 
-__all__ = ["UnitError", "number", "plain", "quoted", "split"]
+__all__ = ["FROM_RAISED", "UnitError", "number", "plain", "quoted", "split"]
 
 LONGEST = 100
 """Characters of a number with its unit (judgement)."""

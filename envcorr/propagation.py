@@ -2,8 +2,8 @@
 
 Monte Carlo after JCGM 101:2008 on a randomised low-discrepancy sequence: batches of 2^10 points of one scrambled Sobol
 sequence, each batch with a random digital shift (XOR) and a random order of the rows of its own, so that the batches
-are independent and unbiased and their scatter is an honest standard error (Owen, ACM Trans. Model. Comput. Simul. 13 (2003)
-363, from memory).
+are independent and unbiased and their scatter is an honest standard error (Owen, ACM Trans. Model. Comput. Simul. 13
+(2003) 363, from memory).
 First order after JCGM 100:2008, clauses 5.1 and 5.2 and annex G.
 """
 
@@ -27,11 +27,20 @@ __all__ = [
     "Budget",
     "Draws",
     "Summary",
+    "batches_to_settle",
+    "budget",
+    "combine",
     "correlation_root",
+    "coverage_factor",
     "draws",
     "first_order",
+    "interval_with",
+    "largest_with",
     "monte_carlo",
     "numerical_tolerance",
+    "partial_quantile",
+    "perturbed",
+    "share_within",
     "summary",
 ]
 
@@ -87,7 +96,7 @@ class Draws:
         A coefficient is that of the normal scores (Gaussian copula), equal to the ordinary one for normals.
         """
         values = [self.place(row, estimate) for row, estimate in enumerate(estimates)]
-        if correlation is not None:
+        if correlation is not None and np.any(correlation - np.eye(len(estimates))):
             from scipy import special
 
             tied = np.flatnonzero(np.any(correlation - np.eye(len(estimates)), axis=1))

@@ -197,7 +197,7 @@ def parse(text: str | float, kind: str, *, decimal_comma: bool = False) -> float
     elif -1e60 < text < 1e60:
         value, unit, text = Fraction(text), "", str(text)
     else:
-        raise UnitError("A number that is not finite, or far outside what can be meant.")
+        raise UnitError("the number is not finite, or far outside what can be meant.")
     scale = _find_scale(kind, unit, text)
     result = float(value * scale.factor + scale.offset)
     return math.atan(result) if scale.slope else result

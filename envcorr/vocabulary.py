@@ -51,7 +51,7 @@ class Quantity:
     ``usual`` [SI] the range outside which ``hint`` says what may have been meant. ``varies`` says whether a repeat
     draws it anew. A ``limit`` that is given bare is an unsigned bound: rectangular about zero. An ``internal``
     quantity (a formula's own error, a unit of noise) is drawn, never given. A ``computed`` one may be given but usually
-    follows from others, so those are asked for where it is lacking.
+    follows from others, so those are asked for where it is lacking. ``example`` is a text that it could be given by.
     """
 
     name: str
@@ -67,6 +67,7 @@ class Quantity:
     default: Assumed | None = None
     internal: bool = False
     computed: bool = False
+    example: str = ""
 
     @property
     def parameter(self) -> str:
@@ -93,6 +94,10 @@ class Choice:
 _K0 = ZERO_CELSIUS.value
 
 QUANTITIES: tuple[Quantity, ...] = (
+    # what was read --------------------------------------------------------------------------------------------
+    Quantity("reading", "mass", "net reading", "What the display shows of the load alone.", low=-100.0, high=100.0),
+    Quantity("gross", "mass", "gross reading", "What the display shows of load and container.", low=-100.0, high=100.0),
+    Quantity("tare", "mass", "tare reading", "What the display shows of the container alone.", low=-100.0, high=100.0),
     # air: what the room does -------------------------------------------------------------------------------
     Quantity(
         "air.temperature",
@@ -130,6 +135,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         low=-500.0,
         high=9000.0,
         varies="never",
+        example="620 m",
     ),
     Quantity(
         "air.humidity",
@@ -148,6 +154,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         "Dew-point temperature of the air, instead of the relative humidity.",
         low=_K0 - 80,
         high=_K0 + 100,
+        example="9 °C",
     ),
     Quantity(
         "air.wet_bulb",
@@ -156,6 +163,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         "Temperature of a ventilated wet-bulb thermometer, instead of the relative humidity.",
         low=_K0 - 20,
         high=_K0 + 100,
+        example="15 °C",
     ),
     Quantity(
         "air.co2",
@@ -167,6 +175,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         usual=(0.0003, 0.01),
         hint="400 ppm is the open air.",
         default=Assumed(Estimate.between(4e-4, 8e-4), "an occupied room, 400 to 800 ppm (common practice, no source)"),
+        example="500 ppm",
     ),
     Quantity(
         "air.density",
@@ -177,6 +186,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         high=10.0,
         usual=(0.6, 1.5),
         computed=True,
+        example="1.19 kg/m³",
     ),
     # cycle: one net weighing, from the tare reading to the loaded reading ------------------------------------
     Quantity(
@@ -205,6 +215,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         low=-50.0,
         high=50.0,
         limit=True,
+        example="0.2 K",
     ),
     Quantity(
         "cycle.pressure_change",
@@ -214,6 +225,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         low=-1e4,
         high=1e4,
         limit=True,
+        example="0.1 hPa",
     ),
     Quantity(
         "cycle.humidity_change",
@@ -223,6 +235,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         low=-1.0,
         high=1.0,
         limit=True,
+        example="1 %",
     ),
     # adjusted: the adjustment of the balance -----------------------------------------------------------------
     Quantity(
@@ -258,6 +271,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         "The largest load that the balance takes, container included (Max, OIML R 76-1).",
         low=1e-6,
         varies="never",
+        example="220 g",
     ),
     Quantity(
         "balance.scale_interval",
@@ -267,6 +281,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         low=1e-12,
         high=0.1,
         varies="never",
+        example="0.1 mg",
     ),
     Quantity(
         "balance.repeatability",
@@ -276,6 +291,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         low=0.0,
         high=1.0,
         varies="never",
+        example="0.1 mg",
     ),
     Quantity(
         "balance.scatter_on",
@@ -312,6 +328,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         low=0.0,
         high=100.0,
         varies="never",
+        example="5 g",
     ),
     Quantity(
         "load.density",
@@ -333,6 +350,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         high=1.0,
         varies="never",
         computed=True,
+        example="5 mL",
     ),
     Quantity(
         "load.open_cell_fraction",
@@ -360,6 +378,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         low=0.0,
         high=100.0,
         varies="never",
+        example="30 g",
     ),
     Quantity(
         "container.density",
@@ -493,6 +512,7 @@ TARGET: tuple[Quantity, ...] = (
         high=1.0,
         varies="never",
         default=Assumed(Estimate(0.5), "half a step of the target resolution (judgement)"),
+        example="0.5",
     ),
     Quantity(
         "target.probability",
@@ -503,6 +523,7 @@ TARGET: tuple[Quantity, ...] = (
         high=0.999,
         varies="never",
         default=Assumed(Estimate(0.95), "95 %, usual for expanded uncertainty (JCGM 100, 6.3.3)"),
+        example="95 %",
     ),
     Quantity(
         "target.relative_accuracy",
@@ -513,5 +534,6 @@ TARGET: tuple[Quantity, ...] = (
         high=0.5,
         varies="never",
         default=Assumed(Estimate(0.001), "0.10 % (USP <41>, from memory)"),
+        example="0.1 %",
     ),
 )

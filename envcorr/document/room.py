@@ -202,7 +202,7 @@ def _remedies(result: RoomResult) -> list[Block]:
         if row.treatment:
             leaves = f"; what is left then: {row.leaves}" if row.leaves else ""
             sentences.append(f"To remove it: {row.treatment}{leaves}.")
-            if row.passes_without and result.verdict.state != "as_read":
+            if row.passes_without and result.corrected.passes is False:
                 sentences.append("Without it, the corrected weighing would reach the target.")
         if row.test:
             sentences.append(f"To see it: {row.test[:1].lower()}{row.test[1:]}")

@@ -37,6 +37,14 @@ EFFECT = Effect(
     load=load,
     quantities=(
         Quantity(
+            "balance.repeatability_readings",
+            "number",
+            "number of readings behind the repeatability",
+            "How many net weighings the repeatability was found from; one more than its degrees of freedom.",
+            low=2.0,
+            varies="never",
+        ),
+        Quantity(
             "balance.noise",
             "number",
             "noise of the balance",
@@ -56,6 +64,7 @@ EFFECT = Effect(
     ),
     own=True,
     needed="always",
+    dof=lambda balance_repeatability_readings: balance_repeatability_readings - 1,
     test="Weigh one steady object of like mass ten times, taring in between, and take the standard deviation.",
     checks=(
         Check(

@@ -13,7 +13,7 @@ from envcorr.estimate import SHAPES, Estimate, Shape
 from envcorr.numerals import quoted
 from envcorr.vocabulary import Quantity
 
-__all__ = ["EntryError", "read_estimate"]
+__all__ = ["KEYS", "SPREADS", "EntryError", "read_estimate", "shown"]
 
 KEYS = ("value", "u", "U", "k", "half_width", "low", "high", "shape", "dof")
 SPREADS = ("u", "U", "half_width")
@@ -38,10 +38,10 @@ def read_estimate(raw: Any, quantity: Quantity, *, sensor: bool = False) -> Esti
     if isinstance(raw, Mapping):
         return _table(raw, quantity, sensor)
     if isinstance(raw, bool) or not isinstance(raw, str | int | float):
-        raise EntryError(f"{_shown(raw)} is not a value.", f"Write {_example(quantity)}.")
+        raise EntryError(f"{shown(raw)} is not a value.", f"Write {_example(quantity)}.")
     if sensor:
         raise EntryError(
-            f"{_shown(raw)} does not say what it is.",
+            f"{shown(raw)} does not say what it is.",
             f"{TEACH} For example {{ u = {_spread_example(quantity)} }}.",
         )
     value = units.parse(raw, quantity.kind)
@@ -69,14 +69,20 @@ def _table(raw: Mapping[str, Any], quantity: Quantity, sensor: bool) -> Estimate
     shape = _shape(raw, "rectangular" if ends or "half_width" in raw else "normal")
     dof = _dof(raw)
     if ends:
+        if "k" in raw or "dof" in raw:
+            raise EntryError("low and high cannot go with k or dof.", "Leave those out.")
         return _inside(_between(raw, quantity, sensor, shape), quantity, sensor=sensor)
-    centre = _centre(raw, quantity, sensor)
     if not stated:
-        if "shape" in raw or "dof" in raw or "k" in raw:
-            raise EntryError("a shape, dof or k is given without a spread.", TEACH)
-        return _inside(read_estimate(raw["value"], quantity), quantity)
+        if sensor or "shape" in raw or "dof" in raw or "k" in raw:
+            raise EntryError("has no spread.", TEACH)
+        if "value" not in raw:
+            raise EntryError("holds nothing.", f"Write value = {_example(quantity)} in it.")
+        return read_estimate(_plain(raw, "value", _example(quantity)), quantity)
+    centre = _centre(raw, quantity, sensor)
     key = stated[0]
-    spread = _spread(raw[key], quantity, key)
+    spread = _parse(raw, key, quantity, as_spread=True)
+    if spread < 0:
+        raise EntryError(f"{key} ({shown(raw[key])}) is negative.", "A spread has no sign.")
     if key == "U":
         spread /= _k(raw)
     elif "k" in raw:
@@ -99,16 +105,13 @@ def _centre(raw: Mapping[str, Any], quantity: Quantity, sensor: bool) -> float:
         if sensor or quantity.limit:
             return 0.0
         raise EntryError("has a spread but no value.", f"Add value = {_example(quantity)}.")
-    if sensor:  # a known offset of the sensor
-        return units.parse_spread(raw["value"], quantity.kind)
-    return units.parse(raw["value"], quantity.kind)
+    return _parse(raw, "value", quantity, as_spread=sensor)  # a known offset of the sensor
 
 
 def _between(raw: Mapping[str, Any], quantity: Quantity, sensor: bool, shape: Shape) -> Estimate:
-    read = units.parse_spread if sensor else units.parse
-    low, high = (read(raw[key], quantity.kind) for key in ("low", "high"))
+    low, high = (_parse(raw, key, quantity, as_spread=sensor) for key in ("low", "high"))
     if low > high:
-        raise EntryError(f"low ({_shown(raw['low'])}) is above high ({_shown(raw['high'])}).", "Swap them.")
+        raise EntryError(f"low ({shown(raw['low'])}) is above high ({shown(raw['high'])}).", "Swap them.")
     if low == high:
         return Estimate(low)
     if shape in ("normal", "fixed"):
@@ -128,13 +131,13 @@ def _shape(raw: Mapping[str, Any], default: Shape) -> Shape:
             return shape
     near = nearest(str(word), SHAPES)
     known = ", ".join(s for s in SHAPES if s != "fixed")
-    raise EntryError(f"shape {_shown(word)} is not known.", f"Did you mean {near}?" if near else f"Known are {known}.")
+    raise EntryError(f"shape {shown(word)} is not known.", f"Did you mean {near}?" if near else f"Known are {known}.")
 
 
 def _dof(raw: Mapping[str, Any]) -> float:
     if "dof" not in raw:
         return math.inf
-    dof = units.parse(raw["dof"], "number")
+    dof = units.parse(_plain(raw, "dof", "9"), "number")
     if dof < 1:
         raise EntryError("dof is below one.", "Degrees of freedom: readings less one.")
     return dof
@@ -143,19 +146,26 @@ def _dof(raw: Mapping[str, Any]) -> float:
 def _k(raw: Mapping[str, Any]) -> float:
     if "k" not in raw:
         raise EntryError("U is given without k.", "Add the coverage factor of the certificate, usually k = 2.")
-    k = units.parse(raw["k"], "number")
+    k = units.parse(_plain(raw, "k", "2"), "number")
     if not 0.5 <= k <= 10:  # coverage factors of any use lie between (judgement)
         raise EntryError(f"k = {k:g} is no coverage factor.", "It is usually 2.")
     return k
 
 
-def _spread(raw: Any, quantity: Quantity, key: str) -> float:
-    if isinstance(raw, bool) or not isinstance(raw, str | int | float):
-        raise EntryError(f"{key} {_shown(raw)} is not a value.", f"Write {key} = {_spread_example(quantity)}.")
-    spread = units.parse_spread(raw, quantity.kind)
-    if spread < 0:
-        raise EntryError(f"{key} ({_shown(raw)}) is negative.", "A spread has no sign.")
-    return spread
+def _parse(raw: Mapping[str, Any], key: str, quantity: Quantity, *, as_spread: bool) -> float:
+    """Return the SI value of a key of an entry; its name stands before what is wrong with it."""
+    text = _plain(raw, key, (_spread_example if as_spread else _example)(quantity))
+    try:
+        return (units.parse_spread if as_spread else units.parse)(text, quantity.kind)
+    except units.UnitError as error:
+        raise EntryError(f"{key}: {error.problem}", error.remedy) from None
+
+
+def _plain(raw: Mapping[str, Any], key: str, example: str) -> str | float:
+    value = raw[key]
+    if isinstance(value, bool) or not isinstance(value, str | int | float):
+        raise EntryError(f"{key} {shown(value)} is not a value.", f"Write {key} = {example}.")
+    return value
 
 
 def _inside(estimate: Estimate, quantity: Quantity, *, sensor: bool = False) -> Estimate:
@@ -176,7 +186,7 @@ def _inside(estimate: Estimate, quantity: Quantity, *, sensor: bool = False) -> 
 
 
 def _example(quantity: Quantity) -> str:
-    return f'"{units.KINDS[quantity.kind].examples[0]}"'
+    return f'"{quantity.example or units.KINDS[quantity.kind].examples[0]}"'
 
 
 def _spread_example(quantity: Quantity) -> str:
@@ -184,5 +194,6 @@ def _spread_example(quantity: Quantity) -> str:
     return f'"{SPREAD_EXAMPLES.get(kind, units.KINDS[kind].examples[0])}"'
 
 
-def _shown(raw: Any) -> str:
-    return quoted(raw) if isinstance(raw, str) else quoted(str(raw))
+def shown(raw: Any) -> str:
+    """Return what was written, in quotes for a message; a truth value as TOML writes it."""
+    return quoted(str(raw).lower() if isinstance(raw, bool) else str(raw))

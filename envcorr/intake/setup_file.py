@@ -1,4 +1,4 @@
-"""The set-up file: TOML to a Setup, every fault of it in one message.
+"""The set-up: tables, as TOML gives them, to a Setup; every fault of them in one message.
 
 Sections and keys are the vocabulary's names; ``[tare.air]`` and ``[adjusted.air]`` are the air at those moments,
 ``[sensors]`` how well the air is known (``[sensors.load]`` and the like for other quantities).
@@ -6,8 +6,8 @@ Sections and keys are the vocabulary's names; ``[tare.air]`` and ``[adjusted.air
 
 from __future__ import annotations
 
-import tomllib
 from collections.abc import Iterator, Mapping, Sequence
+from functools import cache
 from pathlib import Path
 from typing import Any
 
@@ -16,19 +16,19 @@ import numpy as np
 from envcorr.catalogue import CATALOGUE, Place, nearest
 from envcorr.errors import Fault, InputError
 from envcorr.estimate import Estimate
-from envcorr.intake.entry import KEYS, EntryError, read_estimate
+from envcorr.intake.entry import KEYS, EntryError, read_estimate, shown
+from envcorr.intake.toml_file import read_mapping, unusable, with_changes
 from envcorr.numerals import UnitError, quoted
 from envcorr.propagation import correlation_root
 from envcorr.setup import Correlation, Setup
 from envcorr.vocabulary import MOMENTS, Choice
 
-__all__ = ["LARGEST_FILE", "REQUIRED", "parse_setup", "read_mapping", "read_setup", "with_changes"]
+__all__ = ["REQUIRED", "parse_setup", "place_of", "read_setup"]
 
-LARGEST_FILE = 2**20
-"""Bytes of a set-up file (judgement: a rich one has a few thousand)."""
 REQUIRED = {"target.resolution": '[target] resolution = "0.1 mg"', "load.mass": '[load] mass = "5 g"'}
 """What a room check cannot do without, and how to write it."""
 _HUMIDITIES = ("humidity", "dew_point", "wet_bulb")
+_HEADS = [f"{moment}{sensor}" for moment in ("tare.", "adjusted.", "") for sensor in ("sensors.", "")]
 _YES_NO = {True: "yes", False: "no"}
 
 
@@ -38,46 +38,6 @@ def read_setup(path: str | Path, *, changes: Sequence[str] = (), require: Sequen
     Raises :class:`InputError` with every fault of the file.
     """
     return parse_setup(read_mapping(path), changes=changes, require=require, what=str(path))
-
-
-def read_mapping(path: str | Path) -> dict[str, Any]:
-    """Return the tables of a TOML file as they are written. Raises :class:`InputError` where it is none."""
-    path = Path(path)
-    name = quoted(str(path))
-
-    def fault(problem: str, remedy: str) -> InputError:
-        return InputError([Fault(name, problem, remedy)])
-
-    try:
-        if path.is_dir():
-            raise fault("is a folder.", "Name the set-up file in it.")
-        size = path.stat().st_size
-        if size > LARGEST_FILE:
-            raise fault(f"has {size} bytes.", "A set-up file is text of a few kilobytes; is this another file?")
-        data = path.read_bytes()
-    except FileNotFoundError:
-        raise fault("is not there.", "Check the name and the folder.") from None
-    except PermissionError:
-        raise fault("may not be read.", "Check its permissions.") from None
-    except (OSError, ValueError) as error:
-        reason = getattr(error, "strerror", None) or "its name cannot be used"
-        raise fault(f"cannot be read: {reason}.", "Check the name.") from None
-    if b"\0" in data:
-        raise fault("is not text.", "A set-up file is TOML, plain text in UTF-8.")
-    try:
-        text = data.decode("utf-8-sig")
-    except UnicodeDecodeError as error:
-        line = data[: error.start].count(b"\n") + 1
-        raise fault(f"is not UTF-8 (line {line}).", "Save it as UTF-8.") from None
-    if not text.strip():
-        raise fault("is empty.", "See the examples for what a set-up file holds.")
-    try:
-        return tomllib.loads(text)
-    except (tomllib.TOMLDecodeError, RecursionError) as error:
-        problem = str(error) or "it is nested too deeply"
-        raise fault(
-            f"is not TOML: {problem}.", 'Texts stand in quotes, as in temperature = "20 °C"; sections as [air].'
-        ) from None
 
 
 def parse_setup(
@@ -93,6 +53,8 @@ def parse_setup(
         mapping = with_changes(mapping, changes)
     except InputError as error:
         reader.faults.extend(error.faults)
+    if fault := unusable(mapping):
+        raise InputError([*reader.faults, fault], what=what)
     reader.read(mapping)
     reader.check_together()
     for name in require:
@@ -108,57 +70,6 @@ def parse_setup(
         title=reader.title,
         written=reader.written,
     )
-
-
-def with_changes(mapping: Mapping[str, Any], changes: Sequence[str]) -> dict[str, Any]:
-    """Return a copy of the mapping with changes like ``air.temperature=20 °C`` or ``air.humidity.u=2 %`` made."""
-    result = _copied(mapping)
-    faults = []
-    for change in changes:
-        name, sign, text = change.partition("=")
-        name = name.strip()
-        if not sign or not name or not text.strip():
-            faults.append(Fault(f"--set {quoted(change)}", "has no value.", 'Write --set air.temperature="20 °C".'))
-            continue
-        try:
-            _put(result, name.split("."), _toml_value(text.strip()))
-        except EntryError as error:
-            faults.append(Fault(f"--set {name}", error.problem, error.remedy))
-    if faults:
-        raise InputError(faults)
-    return result
-
-
-def _copied(mapping: Mapping[str, Any]) -> dict[str, Any]:
-    return {key: _copied(value) if isinstance(value, Mapping) else value for key, value in mapping.items()}
-
-
-def _toml_value(text: str) -> Any:
-    """Return a quoted text, a table, a list, a truth value or a number as TOML reads it; anything else as text."""
-    if text[0] in "\"'{[" or text in ("true", "false"):
-        try:
-            return tomllib.loads(f"it = {text}")["it"]
-        except tomllib.TOMLDecodeError:
-            raise EntryError(f"{quoted(text)} is not a value of TOML.", "Check its quotes and braces.") from None
-    return text
-
-
-def _put(result: dict[str, Any], path: Sequence[str], value: Any) -> None:
-    table = result
-    for key in path[:-1]:
-        inner = table.get(key)
-        if inner is None:
-            inner = table[key] = {}
-        elif not isinstance(inner, dict):
-            # a plain value becomes a table when one of its keys is changed
-            if path[-1] not in KEYS:
-                raise EntryError(f"{key} is no section.", "Check the name.")
-            inner = table[key] = {"value": inner}
-        table = inner
-    if path[-1] in ("u", "U", "half_width"):
-        for other in ("u", "U", "half_width", "k", "shape"):
-            table.pop(other, None)
-    table[path[-1]] = value
 
 
 class _Reader:
@@ -183,14 +94,16 @@ class _Reader:
             if key == "title":
                 self.title = value if isinstance(value, str) else ""
                 if not isinstance(value, str):
-                    self.fault("title", f"{quoted(str(value))} is not a text.", 'Write title = "Bay 3".')
+                    self.fault("title", f"{shown(value)} is not a text.", 'Write title = "Bay 3".')
             elif key == "correlation":
                 self._correlations(value)
+            elif key in CATALOGUE.quantities and not _holds_sections(value):  # a reading, which has no section
+                self._entry(key, value)
             elif isinstance(value, Mapping):
                 for name, raw in _entries(key, value):
                     self._entry(name, raw)
             else:
-                self._unknown(key)
+                self._no_entry(key, value)
 
     def _entry(self, name: str, raw: Any) -> None:
         if name == "target.waived":
@@ -203,7 +116,7 @@ class _Reader:
             return
         place = CATALOGUE.find(name)
         if place is None:
-            self._unknown(name)
+            self._no_entry(name, raw)
             return
         if place.quantity.internal:
             self.fault(name, "is worked out, not given.", "Leave it out.")
@@ -212,7 +125,7 @@ class _Reader:
             self.estimates[name] = read_estimate(raw, place.quantity, sensor=place.sensor)
             self.written[name] = _as_written(raw)
         except (EntryError, UnitError) as error:
-            read = "" if isinstance(raw, Mapping) or quoted(str(raw)) in error.problem else f"read {quoted(str(raw))}: "
+            read = "" if isinstance(raw, Mapping) or shown(raw) in error.problem else f"read {shown(raw)}: "
             self.fault(name, f"{read}{error.problem}", error.remedy)
 
     def _choice(self, choice: Choice, raw: Any) -> None:
@@ -227,7 +140,7 @@ class _Reader:
         near = nearest(str(word), choice.options)
         known = ", ".join(f'"{option}"' for option in choice.options)
         hint = f'Did you mean "{near}"? ' if near else ""
-        self.fault(choice.name, f"{quoted(str(raw))} is not one of its words.", f"{hint}Known are {known}.")
+        self.fault(choice.name, f"{shown(raw)} is not one of its words.", f"{hint}Known are {known}.")
 
     def _waived(self, raw: Any) -> None:
         names = raw if isinstance(raw, list) else [raw]
@@ -237,13 +150,23 @@ class _Reader:
                 continue
             near = nearest(str(name), CATALOGUE.effects)
             hint = f"Did you mean {near}?" if near else f"Known are {', '.join(CATALOGUE.effects)}."
-            self.fault("target.waived", f"{quoted(str(name))} is not an effect.", hint)
+            self.fault("target.waived", f"{shown(name)} is not an effect.", hint)
+
+    def _no_entry(self, name: str, raw: Any) -> None:
+        if name in _sections():
+            self.fault(name, f"{shown(raw)} is not a section.", f"Write [{name}] and its entries below.")
+        else:
+            self._unknown(name)
 
     def _unknown(self, name: str) -> None:
+        head = next((head for head in _HEADS if head and name.startswith(head)), "")
+        rest = name.removeprefix(head)
         words = [*CATALOGUE.words(), "target.waived", "title", "correlation"]
-        last = name.rpartition(".")[2]
-        near = nearest(name, words) or next((word for word in words if word.rpartition(".")[2] == last), "")
-        near = near or nearest(last, [word.rpartition(".")[2] for word in words])
+        keys = {word.rpartition(".")[2]: word for word in reversed(words)}
+        last = rest.rpartition(".")[2]
+        near = nearest(rest, words) or keys.get(last) or keys.get(nearest(last, keys), "")
+        if near in CATALOGUE.quantities and not near.startswith("target."):
+            near = f"{head}{near}"
         self.fault(name, "is not known.", f"Did you mean {near}?" if near else "See envcorr explain for every name.")
 
     def _correlations(self, raw: Any) -> None:
@@ -261,8 +184,10 @@ class _Reader:
                     self._unknown(name)
             elif names[0] == names[1]:
                 self.fault("correlation", f"{names[0]} is named twice.", "Name two quantities.")
+            elif any({c.first, c.second} == set(names) for c in self.correlations):
+                self.fault("correlation", f"{' and '.join(names)} are correlated twice.", "Keep one entry.")
             elif isinstance(coefficient, bool) or not isinstance(coefficient, int | float) or not abs(coefficient) <= 1:
-                self.fault("correlation", f"the coefficient {quoted(str(coefficient))} is not from -1 to 1.")
+                self.fault("correlation", f"the coefficient {shown(coefficient)} is not from -1 to 1.")
             else:
                 self.correlations.append(Correlation(names[0], names[1], float(coefficient)))
 
@@ -286,15 +211,22 @@ class _Reader:
             self.fault(given[-1], f"is given beside {' and '.join(given[:-1])}.", "Keep one measure of humidity.")
 
     def _dew_point(self, head: str) -> None:
-        temperature = self.estimates.get(f"{head}air.temperature") or self.estimates.get("air.temperature")
+        """Compare the wet temperature that holds at a moment with the air temperature that does."""
+        own = any(f"{head}air.{name}" in self.estimates for name in _HUMIDITIES)
+        temperature = f"{head}air.temperature" if f"{head}air.temperature" in self.estimates else "air.temperature"
         for name, label in (("dew_point", "dew point"), ("wet_bulb", "wet-bulb temperature")):
-            wet = self.estimates.get(f"{head}air.{name}")
-            if wet and temperature and float(wet.centre) > float(temperature.centre):
-                self.fault(
-                    f"{head}air.{name}",
-                    f"the {label} {quoted(self.written[f'{head}air.{name}'])} is above the air temperature.",
-                    "Air cannot hold that much water: check which of the two it is.",
-                )
+            where = f"{head if own else ''}air.{name}"
+            if head and not own and temperature == "air.temperature":
+                continue  # said once, of the air at the loaded reading
+            if where in self.estimates and temperature in self.estimates:
+                wet, dry = (float(self.estimates[found].centre) for found in (where, temperature))
+                if wet > dry:
+                    self.fault(
+                        where,
+                        f"the {label} {quoted(self.written[where])} is above {temperature}, "
+                        f"{quoted(self.written[temperature])}.",
+                        "Air cannot hold that much water: check which of the two it is.",
+                    )
 
     def _correlation_matrix(self) -> None:
         names = sorted({name for c in self.correlations for name in (c.first, c.second)})
@@ -313,6 +245,11 @@ class _Reader:
             self.faults.extend(error.faults)
 
 
+def _holds_sections(value: Any) -> bool:
+    """Return whether a table is no entry: ``[tare.air]`` is the air at the tare, ``tare = "30 g"`` a reading."""
+    return isinstance(value, Mapping) and not any(key in KEYS for key in value)
+
+
 def _entries(section: str, table: Mapping[str, Any]) -> Iterator[tuple[str, Any]]:
     """Yield the dotted name and the raw value of every entry of a section, its inner sections included."""
     for key, value in table.items():
@@ -328,11 +265,15 @@ def _is_entry(name: str) -> bool:
     full = _full_name(name)
     if CATALOGUE.find(full) is not None or full in CATALOGUE.choices:
         return True
-    sections = {word.rpartition(".")[0] for word in CATALOGUE.words()}
-    known = {*sections, *(f"{head}{s}" for s in sections for head in ("tare.", "adjusted.", "sensors."))}
-    known |= {"sensors", "tare.sensors", "adjusted.sensors"}
-    known |= {f"{head}sensors.{s}" for s in sections for head in ("tare.", "adjusted.")}
-    return name not in known
+    return name not in _sections()
+
+
+@cache
+def _sections() -> frozenset[str]:
+    """Return the dotted name of every section that a file may have."""
+    sections = {word.rpartition(".")[0] for word in CATALOGUE.words()} - {""}
+    heads = (head.rstrip(".") for head in _HEADS if head)
+    return frozenset((*heads, *(f"{head}{section}" for head in _HEADS for section in sections)))
 
 
 def _full_name(name: str) -> str:

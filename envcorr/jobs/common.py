@@ -18,8 +18,11 @@ __all__ = ["correlation_matrix", "notices", "usual_range_notices"]
 def notices(plan: Plan, values: Sequence[Any]) -> tuple[Notice, ...]:
     """Return what the plan's checks have to say about the nodes' values (floats, or arrays over the draws)."""
     found: dict[str, Notice] = {}
+    best = plan.centres()
     for planned in plan.checks:
-        mask = planned.check.function(*[values[i] for i in planned.inputs])
+        # a remark concerns the best estimate, a warning every draw
+        at = best if planned.check.level == "info" else values
+        mask = planned.check.function(*[at[i] for i in planned.inputs])
         share = float(np.mean(mask))
         if share == 0.0:
             continue

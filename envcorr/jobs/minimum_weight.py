@@ -18,7 +18,8 @@ __all__ = ["Least", "MinimumWeight", "minimum_weight"]
 
 COVERAGE_FACTOR = 2.0
 """USP <41>, from memory: twice the standard deviation."""
-_SPAN = 1e6  # masses looked at reach this far below the largest (judgement)
+_WITHOUT_CAPACITY = 1e4  # times the load: the largest mass looked at where no capacity is given (judgement)
+_SPAN = 1e9  # masses looked at reach this far below the largest (judgement)
 _STEP = 1e-3  # relative width to which the mass is found (judgement)
 
 
@@ -54,8 +55,8 @@ def minimum_weight(
     centre = float(plan.centres()[plan.targets["mass"]])
     capacity = plan.setup.estimates.get("balance.max_capacity")
     container = plan.setup.estimates.get("container.mass")
-    largest = max(float(capacity.centre) - float(container.centre if container else 0.0), centre) if capacity else 0.0
-    largest = max(largest, 10 * centre)
+    tare = float(container.centre) if container else 0.0
+    largest = max(float(capacity.centre) - tare, centre) if capacity else _WITHOUT_CAPACITY * centre
     whole = range(len(plan.effects))
 
     def values_at(mass: float) -> list[Any]:
@@ -84,7 +85,8 @@ def minimum_weight(
 
         return plan.effects[max(whole, key=left)].effect.title
 
-    missing = [n.effect.title for n in plan.not_assessed if n.effect.needed == "always"]
+    lacking = [n.effect for n in plan.not_assessed if n.effect.needed == "always"]
+    missing = [effect.title for effect in lacking if effect.name not in plan.setup.waived]
     if centre <= 0 or missing or not plan.effects:
         why = Least(None, f"not computed: {' and '.join(missing) or 'the load'} could not be assessed")
         return MinimumWeight(accuracy, from_repeatability, why, why)
@@ -160,9 +162,10 @@ def _against_gross(plan: Plan, least: Least, net: float, container: Any) -> tupl
     if net < least.mass <= gross:
         from envcorr import units
 
+        limit, own, both = (units.show(mass, "mass") for mass in (least.mass, net, gross))
         sentence = (
-            f"The minimum weight {units.show(least.mass, 'mass')} applies to the net mass ({units.show(net, 'mass')}), "
-            f"which is below it; the gross load ({units.show(gross, 'mass')}) does not count."
+            f"The minimum weight {limit} applies to the net mass ({own}), which is below it; the gross load ({both}) "
+            "does not count."
         )
         return (Notice("minimum weight", sentence, "USP <41>, from memory"),)
     return ()

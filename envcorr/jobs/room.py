@@ -7,6 +7,7 @@ effect that names a treatment set to zero), each for the surroundings alone and 
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from typing import Any
@@ -34,6 +35,7 @@ from envcorr.propagation import (
 from envcorr.setup import Setup
 
 __all__ = [
+    "SCOPES",
     "AnswerRow",
     "EffectRow",
     "Figures",
@@ -131,6 +133,8 @@ class RoomResult:
     """The resolution supported for the difference of two weighings of one load [kg], by the whole error."""
     effects: tuple[EffectRow, ...]
     quantities: tuple[QuantityRow, ...]
+    correction: float
+    """What to add to the reading for all correctable effects together, at the best estimates [kg]."""
     interaction: float
     interaction_share: dict[Scope, float]
     first_order: FirstOrder
@@ -202,11 +206,12 @@ def check_room(
         },
         effects=effects,
         quantities=_quantity_rows(run, target, basis, decisive, correlation),
+        correction=-float(plan.parts(plan.centres(), known=True).total(whole)),
         interaction=float(np.mean(together)) - explained,
         interaction_share={
             scope: 1.0 - sum(row.share[scope] for row in effects if scope in row.share) for scope in SCOPES
         },
-        first_order=replace(first, blind_to=tuple(row.name for row in effects if row.first_order_u < 0.5 * row.u)),
+        first_order=replace(first, blind_to=_blind_to(effects)),
         not_assessed=plan.not_assessed,
         assumed=plan.assumed,
         unused=plan.unused,
@@ -358,8 +363,8 @@ def _first_order(run: Run, basis: State, whole: Summary, correlation: Any) -> tu
         return budget(outcome, estimates, spread, probability=whole.probability, correlation=correlation)
 
     total = found(weighing.error(basis, scope_of(plan, "whole")))
-    if run.difference:
-        total = _of_difference(total, plan, estimates, correlation)
+    if run.difference or run.repeats > 1:
+        total = _of_result(total, run, estimates, correlation)
     single = [found(weighing.effect("as_read", i)).u for i in range(len(plan.effects))]
     low, high = total.interval
     difference = abs(low - whole.interval[0]), abs(high - whole.interval[1])
@@ -367,7 +372,19 @@ def _first_order(run: Run, basis: State, whole: Summary, correlation: Any) -> tu
     return single, FirstOrder(total, difference, tolerance, max(difference) <= tolerance, ())
 
 
-def _of_difference(single: Budget, plan: Plan, estimates: Sequence[Estimate], correlation: Any) -> Budget:
-    """Return the first-order budget of the difference of two results: what never varies cancels."""
-    twice = np.array([0.0 if leaf.varies == "never" else np.sqrt(2.0) for leaf in plan.leaves])
-    return combine(0.0, single.contributions * twice, estimates, single.probability, correlation)
+def _blind_to(effects: Sequence[EffectRow]) -> tuple[str, ...]:
+    """Return the effects of whose spread first order reads less than half; rounding of the arithmetic is no spread."""
+    least = 0.01 * max((row.u for row in effects), default=0.0)  # of the largest (judgement)
+    return tuple(row.name for row in effects if row.u > least and row.first_order_u < 0.5 * row.u)
+
+
+def _of_result(single: Budget, run: Run, estimates: Sequence[Estimate], correlation: Any) -> Budget:
+    """Return the first-order budget of a mean of repeats, or of the difference of two results.
+
+    What never varies stays in a mean and cancels in a difference; the rest falls with the root of the repeats.
+    """
+    never = 0.0 if run.difference else 1.0
+    rest = math.sqrt((2.0 if run.difference else 1.0) / run.repeats)
+    factors = np.array([never if leaf.varies == "never" else rest for leaf in run.plan.leaves])
+    value = 0.0 if run.difference else single.value
+    return combine(value, single.contributions * factors, estimates, single.probability, correlation)

@@ -16,7 +16,18 @@ from envcorr.jobs.weighings import STATES, Run, Scope, State, scope_of
 from envcorr.propagation import Summary, largest_with, share_within, summary
 from envcorr.setup import Setup
 
-__all__ = ["Answer", "Figures", "Target", "Total", "Verdict", "figures", "give_verdict", "is_needed", "judge"]
+__all__ = [
+    "Answer",
+    "Figures",
+    "Target",
+    "Total",
+    "Verdict",
+    "figures",
+    "give_verdict",
+    "is_needed",
+    "judge",
+    "treatments",
+]
 
 Answer = Literal["reached", "reached once corrected", "reached once treated", "undecided", "not reached"]
 ANSWERS: dict[State, Answer] = {
@@ -186,13 +197,10 @@ def _reason(run: Run, target: Target, state: State, treat: Sequence[int]) -> str
     # an effect with no correction at its best estimate may still be followed by a sensor
     corrected += [effects[i].effect.title for i in seen if _followed(run, i, small)]
     parts = [f"Corrected for {_listed(corrected)}"] if corrected else ["As it is read"]
-    for i in treat:
-        effect = effects[i].effect
-        words = f"{effect.title} treated ({effect.treatment})"
-        parts.append(
-            f"{words}; the test: {effect.test[:1].lower()}{effect.test[1:].rstrip('.')}" if effect.test else words
-        )
-    return f"{', and with '.join(parts)}, the target is reached."
+    parts += [f"with {effects[i].effect.title} treated ({effects[i].effect.treatment})" for i in treat]
+    tests = [f"{effects[i].effect.title}: {effects[i].effect.test}" for i in treat if effects[i].effect.test]
+    narrower = f" What would tell how large it is: {' '.join(tests)}" if tests else ""
+    return f"{' and '.join(parts)}, the target is reached.{narrower}"
 
 
 def _followed(run: Run, index: int, small: float) -> bool:

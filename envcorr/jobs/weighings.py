@@ -22,7 +22,18 @@ from envcorr.propagation import (
     summary,
 )
 
-__all__ = ["FEW_BATCHES", "STATES", "Run", "Scope", "State", "Weighings", "few", "run_weighings", "scope_of"]
+__all__ = [
+    "FEW_BATCHES",
+    "STATES",
+    "Run",
+    "Scope",
+    "State",
+    "Weighings",
+    "few",
+    "inside_physics",
+    "run_weighings",
+    "scope_of",
+]
 
 State = Literal["as_read", "corrected", "treated"]
 Scope = Literal["surroundings", "whole"]

@@ -19,6 +19,23 @@ from envcorr.errors import NotComputedError
 from envcorr.estimate import Value
 from envcorr.memory import keep_freed_memory
 
+__all__ = [
+    "compressibility",
+    "density_cipm",
+    "density_cipm_column",
+    "density_coolprop",
+    "density_oiml",
+    "dew_point_from_vapour_fraction",
+    "enhancement_factor",
+    "humidity_from_vapour_fraction",
+    "outside_cipm_range",
+    "outside_oiml_range",
+    "saturation_vapour_pressure",
+    "vapour_fraction_from_dew_point",
+    "vapour_fraction_from_humidity",
+    "vapour_fraction_from_wet_bulb",
+]
+
 _T0 = ZERO_CELSIUS.value
 
 Mask: TypeAlias = NDArray[np.bool_]

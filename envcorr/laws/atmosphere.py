@@ -16,6 +16,16 @@ from envcorr.constants import (
 )
 from envcorr.estimate import Value
 
+__all__ = [
+    "altitude_at_pressure",
+    "density_at_altitude",
+    "geopotential_altitude",
+    "pressure_at_altitude",
+    "pressure_ratio",
+    "sea_level_pressure",
+    "station_pressure",
+]
+
 # ISO 2533:1975, table 1 and clause 2
 _EARTH_RADIUS = 6_356_766.0  # m, nominal
 _SEA_LEVEL_TEMPERATURE = 288.15  # K

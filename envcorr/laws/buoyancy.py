@@ -9,6 +9,16 @@ from __future__ import annotations
 from envcorr.constants import CONVENTIONAL_AIR_DENSITY, CONVENTIONAL_WEIGHT_DENSITY
 from envcorr.estimate import Value
 
+__all__ = [
+    "adjustment_factor",
+    "comparison_correction",
+    "conventional_mass",
+    "density_from_uncorrected",
+    "displaced_volume_of_foam",
+    "mass_from_conventional",
+    "open_share_of_gas",
+]
+
 _RHO_0 = CONVENTIONAL_AIR_DENSITY.value
 _RHO_C = CONVENTIONAL_WEIGHT_DENSITY.value
 _CONVENTION = 1 - _RHO_0 / _RHO_C  # what the reference weight retains in the reference air

@@ -12,6 +12,15 @@ from envcorr.constants import DRY_AIR_GAS_CONSTANT, STEFAN_BOLTZMANN
 from envcorr.estimate import Value
 from envcorr.laws.heat import grashof_number, viscosity
 
+__all__ = [
+    "cooling_time",
+    "cooling_time_compact",
+    "difference_compact",
+    "heat_transfer_coefficient",
+    "nusselt_wall",
+    "thermal_conductivity",
+]
+
 # EURAMET cg-18 v4.0, appendix F, table F1.1: a fit to its entries, within 0.05 min (the entries from memory)
 _STILL, _STEADY = 0.0036132 / 60, 0.0064512 / 60  # 1/(s K^(1/4)) and 1/s, of a weight of 1 kg
 

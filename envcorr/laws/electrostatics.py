@@ -13,6 +13,21 @@ from numpy.typing import NDArray
 from envcorr.constants import AIR_BREAKDOWN_FIELD, VACUUM_PERMITTIVITY
 from envcorr.estimate import Value
 
+__all__ = [
+    "breakdown_surface_charge",
+    "decay_time",
+    "field_above_sheet",
+    "field_pressure",
+    "point_charge_for_force",
+    "point_charge_force",
+    "relaxation_time",
+    "sheet_pressure",
+    "sheet_under_roof_force",
+    "sphere_capacitance",
+    "sphere_force_at_potential",
+    "sphere_force_with_charge",
+]
+
 _EPS0 = VACUUM_PERMITTIVITY.value
 
 

@@ -10,6 +10,8 @@ import numpy as np
 
 from envcorr.estimate import Value
 
+__all__ = ["normal_gravity"]
+
 # Moritz (2000): gravity at the equator, k and e² of Somigliana's formula; semi-major axis, flattening f and
 # m = omega² a² b/GM
 _GRAVITY_AT_EQUATOR = 9.7803267715  # m/s²

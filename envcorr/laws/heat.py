@@ -12,6 +12,16 @@ from envcorr.constants import DRY_AIR_GAS_CONSTANT, STANDARD_GRAVITY
 from envcorr.estimate import Value
 from envcorr.laws.air import density_cipm
 
+__all__ = [
+    "convection_compact",
+    "convection_cylinder",
+    "grashof_number",
+    "kinematic_viscosity",
+    "trapped_air",
+    "viscosity",
+    "wall_shear_force",
+]
+
 _G = STANDARD_GRAVITY.value
 
 # EURAMET cg-18 v4.0, appendix F, table F2.1 (after Gläser): a fit to its entries, all of which it gives to

@@ -11,15 +11,23 @@ import numpy as np
 
 from envcorr.estimate import Value
 
+__all__ = ["angle_of_loss", "combined_angle", "cosine", "loss", "relative_shift", "steepness"]
+
+
+def steepness(a: Value, b: Value) -> Value:
+    """Return tan² theta = tan² a + tan² b, the square of the gradient of the tilted base."""
+    squares: Value = np.tan(a) ** 2 + np.tan(b) ** 2
+    return squares
+
 
 def combined_angle(a: Value, b: Value) -> Value:
     """Return the angle [rad] between the axis of measurement and the vertical."""
-    return np.arctan(np.sqrt(np.tan(a) ** 2 + np.tan(b) ** 2))
+    return np.arctan(np.sqrt(steepness(a, b)))
 
 
 def cosine(a: Value, b: Value) -> Value:
     """Return cos theta = 1/sqrt(1 + tan² a + tan² b), the share of the weight that acts along the axis."""
-    return 1 / np.sqrt(1 + np.tan(a) ** 2 + np.tan(b) ** 2)
+    return 1 / np.sqrt(1 + steepness(a, b))
 
 
 def loss(theta: Value) -> Value:
@@ -35,12 +43,12 @@ def angle_of_loss(loss: Value) -> Value:
 def relative_shift(adjusted_a: Value, adjusted_b: Value, a: Value, b: Value) -> Value:
     """Return cos B/cos A - 1: the relative change of the reading, adjusted at tilt A and used at tilt B.
 
-    With the gradients s = tan² a + tan² b, the ratio q = sqrt((1 + s_A)/(1 + s_B)) less one is
-    (s_A - s_B)/((1 + s_B)(1 + q)), and s_A - s_B is a product of sums and differences.
+    With the steepness s of each, the ratio q = sqrt((1 + s_A)/(1 + s_B)) less one is
+    (s_A - s_B)/((1 + s_B)(1 + q)), and s_A - s_B is taken as sums times differences.
     """
     a_x, a_y, b_x, b_y = np.tan(adjusted_a), np.tan(adjusted_b), np.tan(a), np.tan(b)
     difference = (a_x - b_x) * (a_x + b_x) + (a_y - b_y) * (a_y + b_y)
-    after = 1 + b_x**2 + b_y**2
-    ratio = np.sqrt((1 + a_x**2 + a_y**2) / after)
+    after = 1 + steepness(a, b)
+    ratio = np.sqrt((1 + steepness(adjusted_a, adjusted_b)) / after)
     shift: Value = difference / (after * (1 + ratio))
     return shift

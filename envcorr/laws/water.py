@@ -12,6 +12,16 @@ from numpy.typing import NDArray
 from envcorr.constants import STANDARD_PRESSURE, ZERO_CELSIUS
 from envcorr.estimate import Value
 
+__all__ = [
+    "air_free_density",
+    "density",
+    "density_uncertainty",
+    "dissolved_air_change",
+    "outside_range",
+    "pressure_factor",
+    "z_factor",
+]
+
 
 def air_free_density(temperature: Value) -> Value:
     """Return the density of air-free water (VSMOW) at 101 325 Pa; Tanaka et al. (2001), equation (1)."""

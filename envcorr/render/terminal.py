@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import codecs
 import io
 import os
+import re
 import sys
 from collections.abc import Iterable, Sequence
 from typing import TYPE_CHECKING, Any, Literal, TextIO
@@ -19,6 +21,7 @@ from envcorr.document.blocks import (
     Tone,
     Verdict,
 )
+from envcorr.numerals import FROM_RAISED
 
 if TYPE_CHECKING:
     from rich.table import Table as RichTable
@@ -43,9 +46,6 @@ _PLAIN = {
     "°F": "degF",
     "°": "deg",
     "µ": "u",
-    "²": "2",
-    "³": "3",
-    "⁻": "-",
     "−": "-",
     "–": "-",
     "·": "*",
@@ -80,7 +80,11 @@ class _Page:
     def __init__(self, width: int, colour: bool, encoding: str) -> None:
         from rich.console import Console
 
-        self.width, self.colour, self.encoding = width, colour, encoding
+        try:
+            self.encoding = codecs.lookup(encoding).name
+        except LookupError:
+            self.encoding = "ascii"
+        self.width, self.colour = width, colour
         self.bars = self.can("█▏▎▍▌▋▊▉░─")
         system: Literal["standard"] | None = "standard" if colour else None
         self.out = io.StringIO()
@@ -100,7 +104,7 @@ class _Page:
         """Return whether the encoding has the signs."""
         try:
             text.encode(self.encoding)
-        except (UnicodeEncodeError, LookupError):
+        except UnicodeEncodeError:
             return False
         return True
 
@@ -109,12 +113,13 @@ class _Page:
         text = "".join(sign if sign.isprintable() else " " for sign in text)
         if self.can(text):
             return text
+        text = re.sub("10(?=[⁰¹²³⁴-⁹⁻])", "10^", text)  # 10⁻⁶ is 10^-6, but m³ is m3
         for sign, instead in _PLAIN.items():
-            if sign in text and not self.can(sign):
+            if not self.can(sign):
                 text = text.replace(sign, instead)
-        return text.encode(self.encoding if self.can("") else "ascii", "replace").decode(
-            self.encoding if self.can("") else "ascii"
-        )
+        if not self.can("⁻"):
+            text = text.translate(FROM_RAISED)
+        return text.encode(self.encoding, "replace").decode(self.encoding)
 
     def text(self, blocks: Iterable[Block]) -> str:
         for block in blocks:
