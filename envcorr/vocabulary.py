@@ -51,7 +51,8 @@ class Quantity:
     ``usual`` [SI] the range outside which ``hint`` says what may have been meant. ``varies`` says whether a repeat
     draws it anew. A ``limit`` that is given bare is an unsigned bound: rectangular about zero. An ``internal``
     quantity (a formula's own error, a unit of noise) is drawn, never given. A ``computed`` one may be given but usually
-    follows from others, so those are asked for where it is lacking. ``example`` is a text that it could be given by.
+    follows from others, so those are asked for where it is lacking. ``example`` is a text
+    that it could be given by. One that is not ``ranked`` has no best estimate worth knowing (the side a coin falls on).
     """
 
     name: str
@@ -68,6 +69,7 @@ class Quantity:
     internal: bool = False
     computed: bool = False
     example: str = ""
+    ranked: bool = True
 
     @property
     def parameter(self) -> str:

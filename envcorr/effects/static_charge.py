@@ -149,6 +149,7 @@ EFFECT = Effect(
             "Down where it is positive, up where it is negative.",
             default=Assumed(Estimate(0.0, "rectangular", 1.0), "either way with the same chance"),
             internal=True,
+            ranked=False,
         ),
     ),
     ways=(

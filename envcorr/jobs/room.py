@@ -320,7 +320,9 @@ def _quantity_rows(
     ratio = run.ratio(basis, chosen, probability)
     rows = []
     for row, leaf in enumerate(plan.leaves):
-        if leaf.estimate.is_exact or not any(plan.reaches(row, effect) for effect in plan.effects):
+        if leaf.estimate.is_exact or not leaf.place.quantity.ranked:
+            continue
+        if not any(plan.reaches(row, effect) for effect in plan.effects):
             continue
         tied = [row] if correlation is None else _tied(correlation, row)
         error = run.with_fixed(tied).error(basis, chosen)

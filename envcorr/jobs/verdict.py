@@ -198,8 +198,9 @@ def _reason(run: Run, target: Target, state: State, treat: Sequence[int]) -> str
     corrected += [effects[i].effect.title for i in seen if _followed(run, i, small)]
     parts = [f"Corrected for {_listed(corrected)}"] if corrected else ["As it is read"]
     parts += [f"with {effects[i].effect.title} treated ({effects[i].effect.treatment})" for i in treat]
-    tests = [f"{effects[i].effect.title}: {effects[i].effect.test}" for i in treat if effects[i].effect.test]
-    narrower = f" What would tell how large it is: {' '.join(tests)}" if tests else ""
+    tests = [(effects[i].effect.title, effects[i].effect.test) for i in treat if effects[i].effect.test]
+    told = [test if len(tests) == 1 else f"{title}: {test}" for title, test in tests]
+    narrower = f" To tell how large it is: {' '.join(told)}" if told else ""
     return f"{' and '.join(parts)}, the target is reached.{narrower}"
 
 
