@@ -8,32 +8,17 @@ from __future__ import annotations
 
 import os
 import sys
-from collections.abc import Callable, Sequence
-from typing import TYPE_CHECKING, Any, TypeVar
+from collections.abc import Sequence
+from typing import Any
 
 import click
 
 import envcorr
-
-if TYPE_CHECKING:
-    from envcorr.document.blocks import Block
+from envcorr.cli_mass import mass
+from envcorr.cli_tools import air_options, emit_blocks, emit_json, json_option, set_option
 
 __all__ = ["cli", "main"]
 
-Command = TypeVar("Command", bound=Callable[..., Any])
-
-AIR_OPTIONS = {
-    "temperature": "Air temperature.",
-    "pressure": "Air pressure at the balance (station pressure).",
-    "sea_level_pressure": "Air pressure reduced to sea level; needs --altitude.",
-    "altitude": "Height of the balance above sea level.",
-    "humidity": "Relative humidity.",
-    "dew_point": "Dew point, instead of the humidity.",
-    "wet_bulb": "Wet-bulb temperature, instead of the humidity.",
-    "co2": "CO2 content; not given, an occupied room is assumed.",
-    "density": "Air density, where it is known directly.",
-    "formula": '"CIPM-2007" (if not said) or "OIML R 111-1".',
-}
 STRICT_ANSWERS = ("not reached", "undecided")
 
 
@@ -80,26 +65,6 @@ def _stop(error: Exception) -> Exception:
     )
 
 
-def _json_option(function: Command) -> Command:
-    return click.option("--json", "as_json", is_flag=True, help="Print JSON, in full precision.")(function)
-
-
-def _set_option(function: Command) -> Command:
-    return click.option(
-        "--set",
-        "changes",
-        multiple=True,
-        metavar="NAME=VALUE",
-        help='Give or change a quantity, as in --set air.temperature="22 °C"; may be repeated.',
-    )(function)
-
-
-def _air_options(function: Command) -> Command:
-    for name, text in reversed(AIR_OPTIONS.items()):
-        function = click.option(f"--{name.replace('_', '-')}", name, metavar="TEXT", help=text)(function)
-    return function
-
-
 @click.group(cls=_Group, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
 @click.version_option(envcorr.__version__, prog_name="envcorr", message="%(prog)s %(version)s")
 def cli() -> None:
@@ -111,10 +76,10 @@ def cli() -> None:
 
 
 @cli.command()
-@_air_options
+@air_options
 @click.option("--setup", metavar="FILE", help="A set-up file whose air is meant; the options change it.")
-@_set_option
-@_json_option
+@set_option
+@json_option
 def air(setup: str | None, changes: Sequence[str], as_json: bool, **given: str | None) -> None:
     """Air density and its uncertainty."""
     from envcorr.intake.setup_file import parse_setup, read_setup
@@ -129,21 +94,21 @@ def air(setup: str | None, changes: Sequence[str], as_json: bool, **given: str |
     if as_json:
         from envcorr.render import json
 
-        _emit_json(json.air(result))
+        emit_json(json.air(result))
     else:
         from envcorr.document import air as page
 
-        _emit_blocks(page.document(result))
+        emit_blocks(page.document(result))
 
 
 @cli.command()
 @click.argument("setup", metavar="SETUP.toml")
-@_set_option
+@set_option
 @click.option("--strict", is_flag=True, help='Exit with 3 on "not reached" and "undecided".')
 @click.option("--as-read", is_flag=True, help="Rank what spoils it by the reading as it is, not as corrected.")
 @click.option("--draws", type=click.IntRange(1, 2**20), help="Number of Monte Carlo draws (at least 16384).")
 @click.option("--seed", type=click.IntRange(min=0), default=0, show_default=True, help="Of the draws.")
-@_json_option
+@json_option
 @click.pass_context
 def room(
     ctx: click.Context,
@@ -163,18 +128,18 @@ def room(
     if as_json:
         from envcorr.render import json
 
-        _emit_json(json.room(result))
+        emit_json(json.room(result))
     else:
         from envcorr.document import room as page
 
-        _emit_blocks(page.document(result))
+        emit_blocks(page.document(result))
     if strict and result.verdict.answer in STRICT_ANSWERS:
         ctx.exit(3)
 
 
 @cli.command()
 @click.argument("name", required=False)
-@_json_option
+@json_option
 def explain(name: str | None, as_json: bool) -> None:
     """Explain a quantity, a choice or an effect.
 
@@ -186,31 +151,12 @@ def explain(name: str | None, as_json: bool) -> None:
     if as_json:
         from envcorr.render import json_explain
 
-        _emit_json(json_explain.explain(subject))
+        emit_json(json_explain.explain(subject))
     else:
-        _emit_blocks(page.overview() if subject is None else page.document(subject))
+        emit_blocks(page.overview() if subject is None else page.document(subject))
 
 
-def _emit_blocks(blocks: Sequence[Block]) -> None:
-    from envcorr.render.terminal import render_for
-
-    _emit(render_for(blocks, sys.stdout))
-
-
-def _emit_json(document: dict[str, Any]) -> None:
-    from envcorr.render.json import dumps
-
-    _emit(dumps(document, encoding=sys.stdout.encoding or "ascii") + "\n")
-
-
-def _emit(text: str) -> None:
-    """Write to standard output; whoever reads it may stop early."""
-    try:
-        sys.stdout.write(text)
-        sys.stdout.flush()
-    except BrokenPipeError:
-        # else the interpreter would complain when it flushes at its end
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+cli.add_command(mass)
 
 
 def main(args: Sequence[str] | None = None) -> None:

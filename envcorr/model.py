@@ -421,7 +421,8 @@ def make_plan(
         node = planner.optional(name)
         if node is not None:
             targets[name] = node
-    for name in ("target.resolution", "target.within", "target.probability", "target.relative_accuracy"):
+    demanded = ("resolution", "within", "probability", "relative_accuracy")
+    for name in () if read else (f"target.{word}" for word in demanded):
         try:
             targets[name] = planner.resolve(catalogue.place(name.replace(".", "_")))
         except _LacksError:

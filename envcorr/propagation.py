@@ -325,15 +325,20 @@ def perturbed(estimates: Sequence[Estimate]) -> tuple[list[Value], list[int]]:
     """Return the inputs of all central differences in one call, and which estimates have a spread.
 
     Each input becomes an array of 2n + 1 values: the best estimates, then each of n inputs one u up, then each one u
-    down (JCGM 100:2008, 5.1.3, note 2).
+    down (JCGM 100:2008, 5.1.3, note 2); a log-uniform moves by the u of its logarithm, which keeps its sign.
     """
     spread = [i for i, estimate in enumerate(estimates) if not estimate.is_exact]
     n = len(spread)
     values: list[Value] = [estimate.centre for estimate in estimates]
     for k, i in enumerate(spread):
-        column = np.full(2 * n + 1, float(estimates[i].centre))
-        column[1 + k] += float(estimates[i].u)
-        column[1 + n + k] -= float(estimates[i].u)
+        estimate = estimates[i]
+        column = np.full(2 * n + 1, float(estimate.centre))
+        if estimate.shape == "log-uniform":
+            column[1 + k] *= math.exp(float(estimate.spread) / math.sqrt(3))
+            column[1 + n + k] /= math.exp(float(estimate.spread) / math.sqrt(3))
+        else:
+            column[1 + k] += float(estimate.u)
+            column[1 + n + k] -= float(estimate.u)
         values[i] = column
     return values, spread
 

@@ -130,6 +130,10 @@ def test_a_volume_grows_with_the_mass():
     by_density = least(load_density=2000.0)
     by_volume = least(load_density=None, load_volume=15 * MG / 2000)
     assert by_volume.as_read.mass == pytest.approx(by_density.as_read.mass, rel=1e-6)
+    # and so it does where a correction is made
+    assert by_volume.corrected.mass == pytest.approx(by_density.corrected.mass, rel=1e-3)
+    uncertain = least(load_density=None, load_volume=normal(15 * MG / 2000, 15 * MG / 2000 * 1e-3))
+    assert uncertain.corrected.mass == pytest.approx(Z * 6 * UG / 0.001, rel=SLACK)
 
 
 def test_applies_to_the_net_mass():

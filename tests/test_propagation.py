@@ -341,6 +341,18 @@ def test_copula_keeps_each_distribution():
     assert stats.spearmanr(x, y).statistic == pytest.approx(6 / math.pi * math.asin(0.35), abs=3e-3)
 
 
+@pytest.mark.parametrize("edge", [0.5 / 2**32, 1 - 0.5 / 2**32])
+def test_copula_stays_finite_at_the_outermost_draws(edge):
+    """Two outermost scores of 6.34 add up to 8.66, beyond which a probability of doubles is 1: kept below it."""
+    drawn = propagation.Draws(np.full((2, 4), edge), 0)
+    matrix = np.array([[1.0, 0.5], [0.5, 1.0]])
+    inputs = [Estimate(0.0, "normal", 1.0), Estimate.between(3.0, 4.0, "triangular")]
+    first, second = drawn.place_all(inputs, matrix)
+    assert np.all(np.isfinite(first))
+    assert np.all((second >= 3.0) & (second <= 4.0))
+    assert np.max(np.abs([first, drawn.place_all(inputs[:1] * 2, matrix)[1]])) > 8
+
+
 def test_copula_leaves_the_others_alone():
     matrix = np.eye(3)
     matrix[0, 2] = matrix[2, 0] = 0.5

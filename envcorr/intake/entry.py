@@ -169,18 +169,28 @@ def _plain(raw: Mapping[str, Any], key: str, example: str) -> str | float:
 
 
 def _inside(estimate: Estimate, quantity: Quantity, *, sensor: bool = False) -> Estimate:
-    """Refuse what physics does not allow: the best estimate, and the ends of a bounded distribution."""
+    """Refuse what physics does not allow: the best estimate, the ends of a bounded distribution, u from the centre."""
     if sensor:
+        reach = abs(float(estimate.centre)) + float(estimate.u)
+        if reach > (quantity.high - quantity.low) / 2:
+            raise EntryError(
+                f"an error of {units.show(reach, units.spread_kind(quantity.kind))} is half of what there can be.",
+                "Check its unit and its decimal point.",
+            )
         return estimate
-    for value in (estimate.centre, *estimate.bounds):
-        value = float(value)
-        if math.isinf(value) or quantity.low <= value <= quantity.high:
+    centre, normal = float(estimate.centre), estimate.shape == "normal"
+    ends = (centre - float(estimate.u), centre + float(estimate.u)) if normal else estimate.bounds
+    for value in (centre, *(float(end) for end in ends)):
+        if quantity.low <= value <= quantity.high and not (normal and value == quantity.low < centre):
             continue
-        low = value < quantity.low
+        low = value <= quantity.low
         bound = quantity.low if low else quantity.high
         word = "below" if low else "above"
         limit = "the smallest" if low else "the largest"
         read, end = units.show(value, quantity.kind), units.show(bound, quantity.kind)
+        if normal and quantity.low <= centre <= quantity.high:
+            problem = f"one u {word} the value is {read}; {limit} that is accepted is {end}."
+            raise EntryError(problem, "Give low and high, as far as they are possible.")
         raise EntryError(f"{read} is {word} {end}, {limit} that is accepted.", quantity.hint)
     return estimate
 

@@ -1,0 +1,68 @@
+"""The commands of the analyst: the true mass behind a reading."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import click
+
+from envcorr.cli_tools import emit_blocks, emit_json, json_option, set_option
+
+__all__ = ["mass"]
+
+OPTIONS = {
+    "reading": ("reading", "What the display shows of the load alone."),
+    "gross": ("gross", "What it shows of load and container; needs --tare."),
+    "tare": ("tare", "What it shows of the container alone."),
+    "density": ("load.density", "Density of the sample."),
+    "density_kind": ("load.density_kind", "gas-displacement, envelope, solid or liquid."),
+    "volume": ("load.volume", "Volume of the sample, instead of its density."),
+    "material": ("load.material", "A material by name, instead of the density."),
+    "temperature": ("air.temperature", "Air temperature."),
+    "pressure": ("air.pressure", "Air pressure at the balance (station pressure)."),
+    "sea_level_pressure": ("air.sea_level_pressure", "Air pressure reduced to sea level; needs --altitude."),
+    "altitude": ("air.altitude", "Height of the balance above sea level."),
+    "humidity": ("air.humidity", "Relative humidity."),
+    "dew_point": ("air.dew_point", "Dew point, instead of the humidity."),
+    "wet_bulb": ("air.wet_bulb", "Wet-bulb temperature, instead of the humidity."),
+    "co2": ("air.co2", "CO2 content; not given, an occupied room is assumed."),
+    "adjusted": ("adjusted.when", '"just before" or "unknown".'),
+}
+
+
+@click.command()
+@click.option("--setup", metavar="FILE", help="A set-up file for all that the options do not say.")
+@set_option
+@click.option("--probability", metavar="TEXT", default="95 %", show_default=True, help="Of the expanded uncertainty.")
+@click.option("--seed", type=click.IntRange(min=0), default=0, show_default=True, help="Of the draws.")
+@json_option
+def mass(
+    setup: str | None, changes: Sequence[str], probability: str, seed: int, as_json: bool, **given: str | None
+) -> None:
+    """The true mass of a sample, from a reading of it.
+
+    For example: envcorr mass --reading "1.25000 g" --density "1050 kg/m³" --temperature "21.4 °C"
+    --pressure "943.1 hPa" --humidity "42 %" --adjusted "just before"
+    """
+    from envcorr.intake.options import coverage_probability
+    from envcorr.intake.setup_file import parse_setup, read_setup
+    from envcorr.jobs.mass import find_mass
+
+    every = [*(f"{OPTIONS[name][0]}={text}" for name, text in given.items() if text is not None), *changes]
+    if setup is None:
+        read = parse_setup({}, changes=every, require=(), what="the options")
+    else:
+        read = read_setup(setup, changes=every, require=())
+    result = find_mass(read, probability=coverage_probability(probability), seed=seed)
+    if as_json:
+        from envcorr.render import json_mass
+
+        emit_json(json_mass.mass(result))
+    else:
+        from envcorr.document import mass as page
+
+        emit_blocks(page.document(result))
+
+
+for _name, (_quantity, _text) in reversed(OPTIONS.items()):
+    mass = click.option(f"--{_name.replace('_', '-')}", _name, metavar="TEXT", help=_text)(mass)

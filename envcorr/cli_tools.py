@@ -1,0 +1,77 @@
+"""What the commands share: their common options, and how an answer is written to standard output."""
+
+from __future__ import annotations
+
+import os
+import sys
+from collections.abc import Callable, Sequence
+from typing import TYPE_CHECKING, Any, TypeVar
+
+import click
+
+if TYPE_CHECKING:
+    from envcorr.document.blocks import Block
+
+__all__ = ["AIR_OPTIONS", "air_options", "emit_blocks", "emit_json", "json_option", "set_option"]
+
+Command = TypeVar("Command", bound=Callable[..., Any])
+
+AIR_OPTIONS = {
+    "temperature": "Air temperature.",
+    "pressure": "Air pressure at the balance (station pressure).",
+    "sea_level_pressure": "Air pressure reduced to sea level; needs --altitude.",
+    "altitude": "Height of the balance above sea level.",
+    "humidity": "Relative humidity.",
+    "dew_point": "Dew point, instead of the humidity.",
+    "wet_bulb": "Wet-bulb temperature, instead of the humidity.",
+    "co2": "CO2 content; not given, an occupied room is assumed.",
+    "density": "Air density, where it is known directly.",
+    "formula": '"CIPM-2007" (if not said) or "OIML R 111-1".',
+}
+
+
+def json_option(function: Command) -> Command:
+    """Add --json."""
+    return click.option("--json", "as_json", is_flag=True, help="Print JSON, in full precision.")(function)
+
+
+def set_option(function: Command) -> Command:
+    """Add --set, as often as wanted."""
+    return click.option(
+        "--set",
+        "changes",
+        multiple=True,
+        metavar="NAME=VALUE",
+        help='Give or change a quantity, as in --set air.temperature="22 °C"; may be repeated.',
+    )(function)
+
+
+def air_options(function: Command) -> Command:
+    """Add an option for each quantity of the air."""
+    for name, text in reversed(AIR_OPTIONS.items()):
+        function = click.option(f"--{name.replace('_', '-')}", name, metavar="TEXT", help=text)(function)
+    return function
+
+
+def emit_blocks(blocks: Sequence[Block]) -> None:
+    """Print a document to standard output."""
+    from envcorr.render.terminal import render_for
+
+    _emit(render_for(blocks, sys.stdout))
+
+
+def emit_json(document: dict[str, Any]) -> None:
+    """Print a result as JSON to standard output."""
+    from envcorr.render.json import dumps
+
+    _emit(dumps(document, encoding=sys.stdout.encoding or "ascii") + "\n")
+
+
+def _emit(text: str) -> None:
+    """Write to standard output; whoever reads it may stop early."""
+    try:
+        sys.stdout.write(text)
+        sys.stdout.flush()
+    except BrokenPipeError:
+        # else the interpreter would complain when it flushes at its end
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
