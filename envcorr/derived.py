@@ -24,6 +24,13 @@ QUANTITIES: tuple[Quantity, ...] = (
         internal=True,
     ),
     Quantity(
+        "air.expected_pressure",
+        "pressure",
+        "air pressure to be expected",
+        "That of the standard atmosphere at the stated altitude.",
+        internal=True,
+    ),
+    Quantity(
         "air.relative_humidity",
         "fraction",
         "relative humidity",
@@ -182,10 +189,10 @@ def _not_the_station(pressure: Value, altitude: Value) -> Any:
 
 
 _STATION_PRESSURE = Check(
-    lambda air_pressure, air_altitude: _not_the_station(air_pressure, air_altitude),
-    "The air pressure {air_pressure} does not belong to an altitude of {air_altitude}: reduced to sea level it would "
-    "be outside 950 to 1050 hPa. Was it a weather service's pressure, already reduced to sea level? Then give it as "
-    "air.sea_level_pressure; at this altitude the station pressure is about 7 % lower per 600 m.",
+    lambda air_pressure, air_altitude, air_expected_pressure: _not_the_station(air_pressure, air_altitude),
+    "The air pressure {air_pressure} does not belong to an altitude of {air_altitude}, where about "
+    "{air_expected_pressure} is to be expected: reduced to sea level it would be outside 950 to 1050 hPa. Was it a "
+    "weather service's pressure, already reduced to sea level? Then give it as air.sea_level_pressure.",
     source="ISO 2533:1975; ordinary weather lies within 950 to 1050 hPa at sea level (judgement)",
 )
 _OUTSIDE_CIPM = Check(
@@ -222,7 +229,8 @@ def _same_air(given: Mapping[str, Any]) -> bool:
 
 _VOLUME_AND_DENSITY = Check(
     lambda load_mass, load_volume, load_density: abs(load_mass / load_volume / load_density - 1) > 0.05,
-    "load.mass over load.volume is not load.density ({load_density}): the volume ({load_volume}) was used. A foam with "
+    "load.mass over load.volume is not load.density ({load_density}): the volume ({load_volume}) was used. A foam "
+    "with "
     "closed cells displaces air with its cells too, so the density of its polymer would be the wrong one.",
     source="a difference of 5 % (judgement)",
     only_if=lambda given: "load.volume" in given,
@@ -279,6 +287,12 @@ WAYS: tuple[Way, ...] = (
         "air.pressure",
         lambda air_sea_level_pressure, air_altitude: atmosphere.station_pressure(air_sea_level_pressure, air_altitude),
         "from the pressure reduced to sea level, and the altitude",
+        source="ISO 2533:1975, standard atmosphere",
+    ),
+    Way(
+        "air.expected_pressure",
+        lambda air_altitude: atmosphere.pressure_at_altitude(air_altitude),
+        "that of the standard atmosphere",
         source="ISO 2533:1975, standard atmosphere",
     ),
     Way(

@@ -359,7 +359,34 @@ FAULTS = [
         '[cycle]\ntemperature_change = "60 K"',
         'cycle.temperature_change: read "60 K": −60 K is below −50 K, the smallest that is accepted.',
     ),
+    # a normal whose u alone reaches what cannot be: one draw in six would lie there
+    (
+        '[load]\ndensity = { value = "32 kg/m³", u = "32 kg/m³" }',
+        "load.density: one u from the value, 0 kg/m³ is below 0.5 kg/m³, the smallest that is accepted. "
+        "Give low and high, as far as they are possible.",
+    ),
+    (
+        '[load]\nmass = { value = "5 g", u = "5 g" }',
+        "load.mass: one u from the value, 0 mg is the smallest that is accepted. Give low and high",
+    ),
+    (
+        '[air]\nhumidity = { value = "99 %", U = "4 %", k = 2 }',
+        "air.humidity: one u from the value, 101 % is above 100 %, the largest that is accepted. Give low and high",
+    ),
+    (
+        '[air]\nhumidity = { value = "101 %", u = "2 %" }',
+        "air.humidity: 101 % is above 100 %, the largest that is accepted. Was it a fraction?",
+    ),
     # sensors
+    (
+        '[sensors]\ntemperature = { U = "400 K", k = 2 }',
+        "sensors.air.temperature: an error of 200 K is over half of the range that is accepted. "
+        "Check its unit and its decimal point.",
+    ),
+    (
+        '[sensors]\nhumidity = { value = "-30 %", half_width = "50 %" }',
+        "sensors.air.humidity: an error of 58.87 % is over half of the range that is accepted.",  # 30 + 50/sqrt(3)
+    ),
     (
         '[sensors]\npressure = "0.5 hPa"',
         f'sensors.air.pressure: "0.5 hPa" does not say what it is. {UNKNOWN_SPREAD} For example {{ u = "0.5 hPa" }}.',

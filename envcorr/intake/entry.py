@@ -170,28 +170,27 @@ def _plain(raw: Mapping[str, Any], key: str, example: str) -> str | float:
 
 def _inside(estimate: Estimate, quantity: Quantity, *, sensor: bool = False) -> Estimate:
     """Refuse what physics does not allow: the best estimate, the ends of a bounded distribution, u from the centre."""
+    centre, u, kind = float(estimate.centre), float(estimate.u), quantity.kind
     if sensor:
-        reach = abs(float(estimate.centre)) + float(estimate.u)
-        if reach > (quantity.high - quantity.low) / 2:
-            raise EntryError(
-                f"an error of {units.show(reach, units.spread_kind(quantity.kind))} is half of what there can be.",
-                "Check its unit and its decimal point.",
-            )
+        if abs(centre) + u > (quantity.high - quantity.low) / 2:
+            error = units.show(abs(centre) + u, units.spread_kind(kind))
+            remedy = "Check its unit and its decimal point."
+            raise EntryError(f"an error of {error} is over half of the range that is accepted.", remedy)
         return estimate
-    centre, normal = float(estimate.centre), estimate.shape == "normal"
-    ends = (centre - float(estimate.u), centre + float(estimate.u)) if normal else estimate.bounds
+    low, high = (units.show(bound, kind) for bound in (quantity.low, quantity.high))
+    ends = (centre - u, centre + u) if estimate.shape == "normal" else estimate.bounds
     for value in (centre, *(float(end) for end in ends)):
-        if quantity.low <= value <= quantity.high and not (normal and value == quantity.low < centre):
+        if value < quantity.low:
+            problem = f"{units.show(value, kind)} is below {low}, the smallest that is accepted."
+        elif value > quantity.high:
+            problem = f"{units.show(value, kind)} is above {high}, the largest that is accepted."
+        elif value == quantity.low != centre and estimate.shape == "normal":
+            problem = f"{low} is the smallest that is accepted."
+        else:
             continue
-        low = value <= quantity.low
-        bound = quantity.low if low else quantity.high
-        word = "below" if low else "above"
-        limit = "the smallest" if low else "the largest"
-        read, end = units.show(value, quantity.kind), units.show(bound, quantity.kind)
-        if normal and quantity.low <= centre <= quantity.high:
-            problem = f"one u {word} the value is {read}; {limit} that is accepted is {end}."
-            raise EntryError(problem, "Give low and high, as far as they are possible.")
-        raise EntryError(f"{read} is {word} {end}, {limit} that is accepted.", quantity.hint)
+        if estimate.shape == "normal" and quantity.low <= centre <= quantity.high:
+            raise EntryError(f"one u from the value, {problem}", "Give low and high, as far as they are possible.")
+        raise EntryError(problem, quantity.hint)
     return estimate
 
 

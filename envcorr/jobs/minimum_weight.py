@@ -3,14 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
 
 from envcorr.effects.repeatability import ROUNDING_FLOOR
 from envcorr.errors import Notice
-from envcorr.estimate import Value
+from envcorr.estimate import Estimate, Value
+from envcorr.model import make_plan
 from envcorr.plan import Plan
 from envcorr.propagation import largest_with, partial_quantile
 
@@ -60,12 +61,16 @@ def minimum_weight(
     whole = range(len(plan.effects))
 
     def values_at(mass: float) -> list[Any]:
-        values, moved = list(base), list(leaf_values)
+        moved = list(leaf_values)
         for row in rows:
-            leaf = plan.leaves[row]
-            moved[row] = mass if leaf.name == "load.mass" else leaf_values[row] * (mass / centre)
-            values = plan.evaluate(moved, base=values, changed=row)
-        return values
+            by_mass = plan.leaves[row].name == "load.mass"
+            moved[row] = mass if by_mass else leaf_values[row] * (mass / centre)
+        if len(rows) == 1:
+            return plan.evaluate(moved, base=base, changed=rows[0])
+        # what is known of a given volume stands fixed in the plan, so another mass needs another one
+        scaled = {leaf.name: _scaled(leaf.estimate, mass / centre) for leaf in (plan.leaves[row] for row in rows)}
+        setup = replace(plan.setup, estimates={**plan.setup.estimates, **scaled})
+        return make_plan(setup, catalogue=plan.catalogue).evaluate(moved)
 
     def as_read(mass: float) -> Value:
         return plan.parts(values_at(mass)).total(whole)
@@ -101,6 +106,11 @@ def minimum_weight(
         found[1],
         _against_gross(plan, from_repeatability, centre, container),
     )
+
+
+def _scaled(estimate: Estimate, factor: float) -> Estimate:
+    spread = estimate.spread if estimate.shape == "log-uniform" else estimate.spread * factor
+    return replace(estimate, centre=estimate.centre * factor, spread=spread)
 
 
 def _from_repeatability(plan: Plan, accuracy: float) -> Least:
