@@ -2,41 +2,29 @@
 
 from __future__ import annotations
 
+from importlib import import_module
+
 from envcorr.effect import Effect
-from envcorr.effects import (
-    adjusting_weight,
-    buoyancy,
-    convection,
-    disturbance,
-    eccentric_loading,
-    nonlinearity,
-    operator_heat,
-    repeatability,
-    sensitivity_temperature,
-    static_charge,
-    stratification,
-    tilt,
-    tilt_zero,
-    trapped_air,
-    zero_temperature,
-)
 
-__all__ = ["EFFECTS"]
+__all__ = ["EFFECTS", "NAMES"]
 
-EFFECTS: tuple[Effect, ...] = (
-    buoyancy.EFFECT,
-    stratification.EFFECT,
-    trapped_air.EFFECT,
-    convection.EFFECT,
-    operator_heat.EFFECT,
-    sensitivity_temperature.EFFECT,
-    zero_temperature.EFFECT,
-    static_charge.EFFECT,
-    tilt.EFFECT,
-    tilt_zero.EFFECT,
-    disturbance.EFFECT,
-    repeatability.EFFECT,
-    nonlinearity.EFFECT,
-    eccentric_loading.EFFECT,
-    adjusting_weight.EFFECT,
+NAMES = (
+    "buoyancy",
+    "stratification",
+    "trapped_air",
+    "convection",
+    "operator_heat",
+    "sensitivity_temperature",
+    "zero_temperature",
+    "static_charge",
+    "tilt",
+    "tilt_zero",
+    "disturbance",
+    "repeatability",
+    "nonlinearity",
+    "eccentric_loading",
+    "adjusting_weight",
 )
+"""One line an effect: the name of its file."""
+
+EFFECTS: tuple[Effect, ...] = tuple(import_module(f"{__name__}.{name}").EFFECT for name in NAMES)
