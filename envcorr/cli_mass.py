@@ -3,10 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from typing import TYPE_CHECKING, Any
 
 import click
 
 from envcorr.cli_tools import emit_blocks, emit_json, json_option, set_option
+
+if TYPE_CHECKING:
+    from envcorr.setup import Setup
 
 __all__ = ["mass"]
 
@@ -31,15 +35,28 @@ OPTIONS = {
 
 
 @click.command()
+@click.argument("table", required=False, metavar="[TABLE]")
+@click.option("--out", metavar="FILE", help="Where the table goes with the masses added: CSV, XLSX or Parquet.")
+@click.option("--column", "mapped", multiple=True, metavar="NAME=HEADER", help="Say which column is which quantity.")
+@click.option("--force", is_flag=True, help="Replace FILE where it is already there.")
 @click.option("--setup", metavar="FILE", help="A set-up file for all that the options do not say.")
 @set_option
 @click.option("--probability", metavar="TEXT", default="95 %", show_default=True, help="Of the expanded uncertainty.")
 @click.option("--seed", type=click.IntRange(min=0), default=0, show_default=True, help="Of the draws.")
 @json_option
 def mass(
-    setup: str | None, changes: Sequence[str], probability: str, seed: int, as_json: bool, **given: str | None
+    table: str | None,
+    out: str | None,
+    mapped: Sequence[str],
+    force: bool,
+    setup: str | None,
+    changes: Sequence[str],
+    probability: str,
+    seed: int,
+    as_json: bool,
+    **given: str | None,
 ) -> None:
-    """The true mass of a sample, from a reading of it.
+    """The true mass of a sample, from a reading of it, or from each reading of a TABLE.
 
     For example: envcorr mass --reading "1.25000 g" --density "1050 kg/m³" --temperature "21.4 °C"
     --pressure "943.1 hPa" --humidity "42 %" --adjusted "just before"
@@ -53,7 +70,13 @@ def mass(
         read = parse_setup({}, changes=every, require=(), what="the options")
     else:
         read = read_setup(setup, changes=every, require=())
-    result = find_mass(read, probability=coverage_probability(probability), seed=seed)
+    coverage = coverage_probability(probability)
+    if table is not None:
+        if out is None:
+            raise click.UsageError("A table needs --out FILE.")
+        _table(table, out, read, mapped=mapped, force=force, probability=coverage, seed=seed, as_json=as_json)
+        return
+    result = find_mass(read, probability=coverage, seed=seed)
     if as_json:
         from envcorr.render import json_mass
 
@@ -62,6 +85,32 @@ def mass(
         from envcorr.document import mass as page
 
         emit_blocks(page.document(result))
+
+
+def _table(table: str, out: str, setup: Setup, *, as_json: bool, **how: Any) -> None:
+    from pathlib import Path
+
+    from rich.console import Console
+    from rich.progress import BarColumn, MofNCompleteColumn, Progress, TimeRemainingColumn
+
+    from envcorr.jobs.mass_file import convert
+
+    columns = ("rows", BarColumn(), MofNCompleteColumn(), TimeRemainingColumn())
+    with Progress(*columns, console=Console(stderr=True), transient=True) as bar:
+        task = bar.add_task("rows", total=None)
+
+        def progress(done: int, total: int) -> None:
+            bar.update(task, completed=done, total=total)
+
+        summary = convert(Path(table), Path(out), setup, progress=progress, **how)
+    if as_json:
+        from envcorr.render import json_mass
+
+        emit_json(json_mass.table(summary))
+    else:
+        from envcorr.document import mass_table as page
+
+        emit_blocks(page.document(summary))
 
 
 for _name, (_quantity, _text) in reversed(OPTIONS.items()):

@@ -327,7 +327,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         "mass",
         "net mass of the load",
         "True mass of what is weighed, without its container.",
-        low=0.0,
+        low=1e-12,  # as the target's resolution; nothing at all is not weighed
         high=100.0,
         varies="never",
         example="5 g",
@@ -348,7 +348,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         "volume",
         "volume of the load",
         "The volume of air that the sample displaces, where it is known directly.",
-        low=0.0,
+        low=1e-17,  # below that of the smallest mass at the largest density
         high=1.0,
         varies="never",
         computed=True,

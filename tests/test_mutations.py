@@ -4,15 +4,21 @@ Warnings are errors (pyproject.toml), so that nothing is computed from numbers t
 """
 
 import json
+import math
 import random
 import re
+import tomllib
 from collections.abc import Callable
+from dataclasses import replace
 
 import pytest
 
 from envcorr import cli
+from envcorr.catalogue import CATALOGUE
 from envcorr.errors import InputError
-from envcorr.intake.setup_file import read_setup
+from envcorr.estimate import Estimate
+from envcorr.intake.setup_file import parse_setup, read_setup
+from envcorr.jobs.room import check_room
 
 RICH = """# invented
 title = "Bay 3, west wall"
@@ -328,6 +334,17 @@ def test_a_mutilated_file_is_answered_or_refused(seed, tmp_path, capsys, monkeyp
     else:
         assert messages == ""
         assert json.loads(page, parse_constant=not_a_number) if as_json else "16384 draws" in page
+
+
+@pytest.mark.parametrize("name", sorted(parse_setup(tomllib.loads(RICH)).estimates))
+def test_the_smallest_that_is_accepted_is_answered(name):
+    """Zero, where it is allowed, and the lower bound of physics: nothing is divided by either."""
+    setup, place = parse_setup(tomllib.loads(RICH)), CATALOGUE.find(name)
+    assert place is not None
+    low = 0.0 if place.sensor or math.isinf(place.quantity.low) else place.quantity.low
+    for value in {low, max(low, 0.0)}:
+        result = check_room(replace(setup, estimates={**setup.estimates, name: Estimate(value)}), draws=2**14)
+        assert math.isfinite(result.as_read.whole.supported_resolution)
 
 
 def test_the_dice_are_fair(tmp_path):

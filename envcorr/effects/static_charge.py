@@ -89,16 +89,22 @@ EFFECT = Effect(
         ),
     ),
     quantities=(
-        _quantity("charge", "charge", "charge of the load", "Net charge on the load or its container."),
+        # bounds far beyond what air holds off (3 MV/m) or a bench can have: only misprints lie outside (judgement)
+        _quantity("charge", "charge", "charge of the load", "Net charge on the load or its container.", -1e-3, 1e-3),
         _quantity(
             "distance", "length", "distance to the fixed plate", "From the charge to the earthed plate.", 1e-5, 1.0
         ),
         _quantity(
-            "surface_charge", "surface charge", "surface charge", "Charge per area of a sheet, film or vial wall."
+            *("surface_charge", "surface charge", "surface charge", "Charge per area of a sheet, film or vial wall."),
+            *(-1e-2, 1e-2),
         ),
-        _quantity("area", "area", "charged area", "Area that faces the fixed plate.", 0.0, 1.0),
-        _quantity("field", "electric field", "electric field", "Field measured between the load and the housing."),
-        _quantity("potential", "potential", "potential of the load", "Voltage of the load against the housing."),
+        _quantity("area", "area", "charged area", "Area that faces the fixed plate.", 1e-10, 1.0),
+        _quantity(
+            "field", "electric field", "electric field", "Field measured between the load and the housing.", -1e9, 1e9
+        ),
+        _quantity(
+            "potential", "potential", "potential of the load", "Voltage of the load against the housing.", -1e7, 1e7
+        ),
         _quantity("radius", "length", "radius of a charged ball", "Of a conducting, insulated load.", 1e-5, 0.5),
         _quantity("roof_height", "length", "height of the roof above the pan", "Of the draught shield.", 1e-3, 2.0),
         Quantity(
@@ -115,6 +121,8 @@ EFFECT = Effect(
             "surface charge",
             "surface charge of an unknown insulating load",
             "Magnitude; taken where the load is insulating and nothing else was said.",
+            low=-1e-2,
+            high=1e-2,
             default=Assumed(
                 Estimate.between(1e-7, 1e-5, "log-uniform"), "0.1 to 10 µC/m², an unknown insulating vial (judgement)"
             ),

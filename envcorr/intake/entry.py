@@ -184,8 +184,6 @@ def _inside(estimate: Estimate, quantity: Quantity, *, sensor: bool = False) -> 
             problem = f"{units.show(value, kind)} is below {low}, the smallest that is accepted."
         elif value > quantity.high:
             problem = f"{units.show(value, kind)} is above {high}, the largest that is accepted."
-        elif value == quantity.low != centre and estimate.shape == "normal":
-            problem = f"{low} is the smallest that is accepted."
         else:
             continue
         if estimate.shape == "normal" and quantity.low <= centre <= quantity.high:

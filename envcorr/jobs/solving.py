@@ -17,7 +17,17 @@ from envcorr.plan import Plan
 from envcorr.propagation import FIRST_BATCHES, draws
 from envcorr.setup import Setup
 
-__all__ = ["TARGETS", "Solution", "bands_by_draws", "correctable", "mass_row", "plan_reading", "reading_of", "solve"]
+__all__ = [
+    "ALIKE",
+    "TARGETS",
+    "Solution",
+    "bands_by_draws",
+    "correctable",
+    "mass_row",
+    "plan_reading",
+    "reading_of",
+    "solve",
+]
 
 TARGETS = ("load.conventional_mass", "load.volume", "air.density")
 """What is told beside the mass."""

@@ -5,9 +5,10 @@ from __future__ import annotations
 from typing import Any
 
 from envcorr.jobs.mass import MassResult, Told
+from envcorr.jobs.mass_file import TableSummary
 from envcorr.render.json import envelope, estimate, figure
 
-__all__ = ["mass"]
+__all__ = ["mass", "table"]
 
 
 def mass(result: MassResult) -> dict[str, Any]:
@@ -63,3 +64,24 @@ def mass(result: MassResult) -> dict[str, Any]:
 
 def _told(told: Told | None, kind: str, unit: str) -> dict[str, Any] | None:
     return None if told is None else figure(told.value, kind, unit, u=told.u)
+
+
+def table(summary: TableSummary) -> dict[str, Any]:
+    """Return the answer of ``envcorr mass`` for a table: what was understood, and what became of its rows."""
+    found = {
+        "source": summary.source,
+        "written": summary.written,
+        "columns": [
+            {"header": one.header, "name": one.name, "unit": one.unit, "spread": one.spread}
+            for one in summary.layout.fields
+        ],
+        "decimal_mark": "," if summary.layout.comma else ".",
+        "rows": summary.rows,
+        "computed": summary.rows - summary.failed,
+        "not_computed": summary.failed,
+        "reasons": summary.faults,
+        "row_notices": summary.notices,
+        "k": summary.k,
+        "coverage_probability": summary.probability,
+    }
+    return envelope("mass", found, assumed=list(summary.assumed.values()))

@@ -1,0 +1,217 @@
+"""Tables of readings: what is understood, what is kept, and that each row is what one reading gives."""
+
+from __future__ import annotations
+
+import json
+import os
+import signal
+import subprocess
+import sys
+import time
+
+import numpy as np
+import polars as pl
+import pytest
+from click.testing import CliRunner
+
+from envcorr.cli import cli
+from envcorr.errors import InputError
+from envcorr.intake.setup_file import parse_setup
+from envcorr.intake.table import Column
+from envcorr.jobs.mass import find_mass
+from envcorr.jobs.mass_file import convert
+from envcorr.jobs.mass_table import masses
+
+AIR = {"temperature": "21.4 °C", "humidity": "42 %", "pressure": "943.10 hPa", "co2": "400 ppm"}
+SETUP = {"air": AIR, "adjusted": {"when": "just before"}}
+FOAM = """no;reading [g];load.density [kg/m³];load.density.u [kg/m³];load.density_kind;load.open_cell_fraction;remark
+A1;1,25000;32;0,5;envelope;0;first
+A2;1,25000;1050;5;gas-displacement;;=1+1
+A3;;1050;5;gas-displacement;;empty
+A4;x;1050;5;gas-displacement;;text
+A5;2,0;-3;5;gas-displacement;;negative
+A6;2,0;1050;5;bulk;;kind
+A7;3,0;;;solid;;no density
+"""
+
+
+def setup(**more):
+    return parse_setup({**SETUP, **more}, require=())
+
+
+def write(tmp_path, text, name="in.csv"):
+    path = tmp_path / name
+    path.write_text(text, encoding="utf-8")
+    return path
+
+
+@pytest.fixture
+def foam(tmp_path):
+    return write(tmp_path, FOAM)
+
+
+@pytest.mark.parametrize("suffix", [".csv", ".xlsx", ".parquet"])
+def test_rows_of_every_kind(tmp_path, foam, suffix):
+    """The invented foam: +44.78 mg and u 0.728 mg of its envelope density, +1.15 mg of a gas displacement (by hand)."""
+    target = tmp_path / f"out{suffix}"
+    summary = convert(foam, target, setup())
+    assert (summary.rows, summary.failed) == (7, 5)
+    if suffix == ".csv":
+        found = pl.read_csv(target, separator=";", decimal_comma=True)
+    else:
+        found = pl.read_excel(target) if suffix == ".xlsx" else pl.read_parquet(target)
+    assert found["no"].to_list() == [f"A{i}" for i in range(1, 8)]  # the order of the rows
+    assert found["remark"].to_list()[1] == "=1+1"  # a text that looks like a formula
+    assert found["correction [g]"][0] * 1e3 == pytest.approx(44.78, abs=0.005)
+    assert found["standard uncertainty [g]"][0] * 1e3 == pytest.approx(0.728, abs=0.001)
+    assert found["correction [g]"][1] * 1e3 == pytest.approx(1.150, abs=0.001)
+    assert found["mass [g]"].to_list()[2:] == [None] * 5
+    notes = found["notices"].to_list()
+    for i, words in enumerate(
+        ["reading: is not given", '"x" is not a number', "outside what is possible", "bulk", "lacks load.density"],
+        start=2,
+    ):
+        assert notes[i].startswith("not computed: ")
+        assert words in notes[i]
+
+
+def test_a_row_is_what_one_reading_gives():
+    """Bands by first order, by draws of each row, and given once: the row is the single reading's mass and u."""
+    said = {
+        "container": {"mass": "12 g", "density": {"value": "2500 kg/m³", "u": "25 kg/m³"}},
+        "cycle": {"pressure_change": {"value": "0 hPa", "u": "0.1 hPa"}},
+        "balance": {"repeatability": "20 µg", "scale_interval": "10 µg", "nonlinearity": "20 µg"},
+        "load": {"warmer_by": {"value": "0 K", "half_width": "0.5 K"}},
+        "static": {"charge": {"value": "0 nC", "u": "0.2 nC"}, "distance": "40 mm"},
+    }
+    density = np.array([950.0, 1050.0, 1200.0, 32.0])
+    reading = np.array([1e-3, 5e-3, 2e-3, 1.25e-3])
+    columns = {"reading": Column(reading), "load.density": Column(density, np.full(4, 3.0), "normal")}
+    rows = masses(setup(**said), columns, {}, 4)
+    assert list(rows.faults) == [""] * 4
+    for i in range(4):
+        load = {**said["load"], "density": {"value": f"{density[i]} kg/m³", "u": "3 kg/m³"}}
+        one = find_mass(
+            parse_setup({**SETUP, **said, "load": load, "reading": f"{float(reading[i]) * 1e3!r} g"}, require=())
+        )
+        assert rows.mass[i] == pytest.approx(one.mass.value, rel=1e-14)
+        assert rows.u[i] == pytest.approx(one.mass.u, rel=0.02)  # 256 draws a row against 16 384
+        assert rows.air_density[i] == pytest.approx(one.air_density.value, rel=1e-14)
+
+
+def test_long_columns_are_what_short_ones_are():
+    random = np.random.default_rng(5)
+    size = 3000
+    columns = {
+        "reading": Column(random.uniform(1e-3, 5e-3, size)),
+        "load.density": Column(random.uniform(500, 8000, size)),
+        "air.temperature": Column(random.uniform(292, 297, size)),
+    }
+    every = masses(setup(), columns, {}, size)
+    for i in (0, 1234, 2999):
+        single = {name: Column(column.values[i : i + 1]) for name, column in columns.items()}
+        one = masses(setup(), single, {}, 1)
+        assert every.mass[i] == pytest.approx(one.mass[0], rel=1e-15)
+        assert every.u[i] == pytest.approx(one.u[0], rel=1e-12)
+
+
+def test_columns_are_mapped(tmp_path):
+    path = write(tmp_path, "Mass (g),rho\n1.25,1050\n")
+    with pytest.raises(InputError, match="no reading was found"):
+        convert(path, tmp_path / "out.csv", setup())
+    summary = convert(path, tmp_path / "out.csv", setup(), mapped=["reading=Mass (g)", "load.density [kg/m³]=rho"])
+    assert summary.failed == 0
+    with pytest.raises(InputError, match="there is no column"):
+        convert(path, tmp_path / "other.csv", setup(), mapped=["reading=Mas (g)"])
+
+
+@pytest.mark.parametrize(
+    ("text", "words"),
+    [
+        ("", "is empty"),
+        ("reading [g],load.density [kg/m³]\n", "no rows"),
+        ("reading [g],reading [g]\n1,2\n", "twice"),
+        ("reading [hPa],load.density [kg/m³]\n1,1050\n", "a mass is wanted"),
+        ("reading,load.density [kg/m³]\n1,1050\n", "has no unit"),
+        ("sample,mass\nA,1\n", "no reading was found"),
+        ("reading [g];load.density [kg/m³]\n1,25;1050\n1.25;1050.5\n", "decimal commas and points"),
+        ("reading [g],load.density.U [kg/m³]\n1,2\n", "does not say its k"),
+        ("reading [g],load.density.u [kg/m³]\n1,2\n", "there is no column of load.density"),
+        ("reading [g],mass [g]\n1,2\n", "already has a column"),
+        (",".join(["reading [g]", *(f"c{i}" for i in range(1200))]) + "\n1\n", "1201 columns"),
+    ],
+)
+def test_tables_that_cannot_be_used(tmp_path, text, words):
+    path = write(tmp_path, text)
+    with pytest.raises(InputError, match=words):
+        convert(path, tmp_path / "out.csv", setup())
+    assert sorted(p.name for p in tmp_path.iterdir()) == ["in.csv"]
+
+
+def test_files_that_cannot_be_used(tmp_path, foam):
+    (tmp_path / "binary.csv").write_bytes(b"\0\1\2" * 50)
+    (tmp_path / "broken.parquet").write_bytes(b"PAR1 nothing")
+    (tmp_path / "latin.csv").write_bytes("reading [g],température\n1,2\n".encode("latin-1"))
+    for name, words in (
+        ("nowhere.csv", "is not there"),
+        ("binary.csv", "is not text"),
+        ("broken.parquet", "cannot be read as a table"),
+        ("latin.csv", "is not UTF-8"),
+        ("in.doc", "Known are"),
+    ):
+        with pytest.raises(InputError, match=words):
+            convert(tmp_path / name, tmp_path / "out.csv", setup())
+    for target, words in (
+        (foam, "is the table itself"),
+        (tmp_path / "no" / "out.csv", "folder is not there"),
+        (tmp_path / "out.doc", "Known are"),
+    ):
+        with pytest.raises(InputError, match=words):
+            convert(foam, target, setup(), force=True)
+
+
+def test_an_existing_file_is_kept_unless_forced(tmp_path, foam):
+    target = write(tmp_path, "mine\n", "out.csv")
+    with pytest.raises(InputError, match="already there"):
+        convert(foam, target, setup())
+    assert target.read_text(encoding="utf-8") == "mine\n"
+    convert(foam, target, setup(), force=True)
+    assert "correction" in target.read_text(encoding="utf-8")
+
+
+def test_killed_in_mid_write_leaves_no_answer(tmp_path):
+    """A process killed while it computes: no file of the answer's name, and the input as it was."""
+    rows = "\n".join(f"{1 + i % 7 / 10:.1f},{900 + i % 400}" for i in range(1_500_000))
+    path = write(tmp_path, f"reading [g],load.density [kg/m³]\n{rows}\n")
+    before = path.stat().st_size
+    code = (
+        "import pathlib; from envcorr.jobs.mass_file import convert; from tests.test_mass_table import setup;"
+        f"print('on', flush=True); folder = pathlib.Path({str(tmp_path)!r});"
+        "convert(folder / 'in.csv', folder / 'out.csv', setup())"
+    )
+    process = subprocess.Popen([sys.executable, "-c", code], stdout=subprocess.PIPE, cwd=os.getcwd())
+    assert process.stdout is not None
+    process.stdout.readline()
+    time.sleep(0.8)
+    process.send_signal(signal.SIGKILL)
+    process.wait()
+    process.stdout.close()
+    assert not (tmp_path / "out.csv").exists()
+    assert path.stat().st_size == before
+
+
+def test_command_line(tmp_path, foam):
+    target = tmp_path / "out.csv"
+    options = [f"--{name}={value}" for name, value in AIR.items()]
+    arguments = ["mass", str(foam), f"--out={target}", "--adjusted=just before", *options]
+    answer = CliRunner().invoke(cli, arguments)
+    assert answer.exit_code == 0, answer.stderr
+    assert "Not computed" in answer.stdout
+    assert "passes through" in answer.stdout
+    found = json.loads(CliRunner().invoke(cli, [*arguments, "--force", "--json"]).stdout)["result"]
+    assert (found["rows"], found["not_computed"]) == (7, 5)
+    assert sum(found["reasons"].values()) == 5
+    refused = CliRunner().invoke(cli, arguments)
+    assert refused.exit_code == 2
+    assert "already there" in refused.stderr
+    assert CliRunner().invoke(cli, ["mass", str(foam)]).exit_code == 2
