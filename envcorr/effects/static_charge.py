@@ -95,8 +95,12 @@ EFFECT = Effect(
             "distance", "length", "distance to the fixed plate", "From the charge to the earthed plate.", 1e-5, 1.0
         ),
         _quantity(
-            *("surface_charge", "surface charge", "surface charge", "Charge per area of a sheet, film or vial wall."),
-            *(-1e-2, 1e-2),
+            "surface_charge",
+            "surface charge",
+            "surface charge",
+            "Charge per area of a sheet, film or vial wall.",
+            -1e-2,
+            1e-2,
         ),
         _quantity("area", "area", "charged area", "Area that faces the fixed plate.", 1e-10, 1.0),
         _quantity(
