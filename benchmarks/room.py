@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from typing import Any
 
+from benchmarks.by_library import density
 from benchmarks.rich_setup import rich_setup
 from benchmarks.side_by_side import Outcome, compare
 from envcorr.jobs.room import check_room
@@ -34,7 +34,7 @@ def outcomes() -> Iterator[Outcome]:
 
     yield compare("full room check / its effects once on drawn arrays", check, effects_once, 10.0, rounds=40)
 
-    from uncertainties import ufloat, umath
+    from uncertainties import ufloat
 
     inputs = {
         "t": (295.15, 0.58), "p": (96000.0, 577.0), "h": (0.42, 0.05), "x": (6e-4, 1.15e-4), "e": (0.0, 1.0),
@@ -42,19 +42,6 @@ def outcomes() -> Iterator[Outcome]:
         "rho_c": (2500.0, 30.0), "st": (0.0, 0.1), "sp": (0.0, 50.0), "sh": (0.0, 0.02), "noise": (0.0, 2e-8),
         "more": (0.0, 2.2e-8), "line": (0.0, 1.15e-8), "ecc": (0.0, 1.15e-8), "adj": (0.0, 1.15e-6),
     }  # fmt: skip
-
-    def density(t: Any, p: Any, h: Any, x: Any, e: Any) -> Any:
-        c = t - 273.15
-        psv = umath.exp(1.2378847e-5 * t * t - 1.9121316e-2 * t + 33.93711047 - 6.3431645e3 / t)
-        xv = h * (1.00062 + 3.14e-8 * p + 5.6e-7 * c * c) * psv / p
-        z = (
-            1
-            - p / t * (1.58123e-6 - 2.9331e-8 * c + 1.1043e-10 * c * c + (5.707e-6 - 2.051e-8 * c) * xv
-                       + (1.9898e-4 - 2.376e-6 * c) * xv * xv)
-            + p * p / (t * t) * (1.83e-11 - 0.765e-8 * xv * xv)
-        )  # fmt: skip
-        mass = 28.96546e-3 + 12.011e-3 * (x - 0.0004)
-        return p * mass / (z * 8.314472 * t) * (1 - xv * (1 - 18.01528e-3 / mass)) * (1 + 22e-6 * e)
 
     def budgets_by_library() -> None:
         for _ in range(SETUPS):

@@ -7,12 +7,13 @@ from collections import defaultdict
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 
+from envcorr.choices import CHOICES
 from envcorr.derived import QUANTITIES as DERIVED
 from envcorr.derived import WAYS
 from envcorr.effect import Check, Effect, Function, Way, parameters
 from envcorr.effects import EFFECTS
 from envcorr.errors import CatalogueError
-from envcorr.vocabulary import CHOICES, MOMENTS, PRESENT, QUANTITIES, TARGET, Choice, Moment, Quantity
+from envcorr.vocabulary import MOMENTS, PRESENT, QUANTITIES, TARGET, Choice, Moment, Quantity
 
 __all__ = ["CATALOGUE", "Catalogue", "Place", "nearest"]
 

@@ -16,7 +16,6 @@ from envcorr.constants import ZERO_CELSIUS
 from envcorr.estimate import Estimate
 
 __all__ = [
-    "CHOICES",
     "MOMENTS",
     "PRESENT",
     "QUANTITIES",
@@ -408,90 +407,6 @@ QUANTITIES: tuple[Quantity, ...] = (
         low=0.0,
         high=1.0,
         varies="never",
-    ),
-)
-
-CHOICES: tuple[Choice, ...] = (
-    Choice(
-        "air.formula",
-        "air density formula",
-        {
-            "CIPM-2007": "with CoolProp's humid air outside its range",
-            "OIML R 111-1": "the approximation (E.3-1)",
-        },
-        default="CIPM-2007",
-        source="Picard et al., Metrologia 45 (2008) 149",
-    ),
-    Choice(
-        "adjusted.when",
-        "when the balance was adjusted",
-        {
-            "just before": "in the same air as the weighing, with the balance as it stands",
-            "unknown": "in other air, within the assumed range about the present one",
-        },
-    ),
-    Choice(
-        "balance.repeatability_from",
-        "where the repeatability was found",
-        {
-            "here": "in this room, so it already holds draught and vibration",
-            "elsewhere": "from a certificate or a data sheet, so the room's disturbances come on top",
-        },
-        default="elsewhere",
-        source="the cautious of the two",
-    ),
-    Choice(
-        "load.density_kind",
-        "kind of density",
-        {
-            "gas-displacement": "of what displaces air, closed pores included (gas pycnometer)",
-            "envelope": "mass over the outer volume; needs load.open_cell_fraction",
-            "solid": "of a compact solid",
-            "liquid": "of a liquid",
-        },
-        default="gas-displacement",
-        source="taken as the density of what displaces air",
-        refused={
-            "bulk": "A bulk density counts the air between the grains, which displaces nothing. "
-            "Give the gas-displacement density of the powder (a gas pycnometer, or a handbook's solid density)."
-        },
-    ),
-    Choice(
-        "load.density_from",
-        "how the density was found",
-        {
-            "corrected": "with the air's buoyancy allowed for",
-            "uncorrected weighing": "mass read in air over volume, not corrected for buoyancy",
-        },
-        default="corrected",
-        source="a density is taken as a true one",
-    ),
-    Choice(
-        "load.insulating",
-        "whether the load or its container can hold a static charge",
-        {"yes": "plastic, glass, filter, film, dry powder", "no": "metal, or earthed"},
-    ),
-    Choice(
-        "container.closed",
-        "whether the container is closed",
-        {
-            "never": "open: only its walls and the sample displace air",
-            "each time": "closed in the air around it at each reading: acts as an open one",
-            "kept shut": "shut before the tare reading and not opened before the loaded one",
-        },
-        default="never",
-        source="an open container",
-    ),
-    Choice(
-        "target.measurand",
-        "what the reading stands for",
-        {
-            "mass": "the true mass",
-            "conventional mass": "the mass of a weight of 8000 kg/m³ that balances it in air of 1.2 kg/m³ (OIML D 28)",
-            "difference": "the difference between two net weighings of one load",
-        },
-        default="mass",
-        source="the true mass",
     ),
 )
 

@@ -8,6 +8,7 @@ import math
 import pytest
 
 from envcorr.catalogue import CATALOGUE, Catalogue
+from envcorr.choices import CHOICES
 from envcorr.derived import QUANTITIES as DERIVED
 from envcorr.derived import WAYS
 from envcorr.document import air as air_page
@@ -24,7 +25,7 @@ from envcorr.model import make_plan
 from envcorr.render import json as as_json
 from envcorr.render import json_explain
 from envcorr.render.terminal import render
-from envcorr.vocabulary import CHOICES, QUANTITIES, TARGET, Quantity
+from envcorr.vocabulary import QUANTITIES, TARGET, Quantity
 
 # an invented room in which everything has a spread
 SETUP = {

@@ -13,13 +13,14 @@ import pytest
 
 import envcorr
 from envcorr.catalogue import CATALOGUE, Catalogue
+from envcorr.choices import CHOICES
 from envcorr.derived import QUANTITIES as DERIVED
 from envcorr.derived import WAYS
 from envcorr.effect import Effect, Way, parameters
 from envcorr.effects import EFFECTS
 from envcorr.errors import CatalogueError
 from envcorr.model import make_plan
-from envcorr.vocabulary import CHOICES, QUANTITIES, TARGET, Quantity
+from envcorr.vocabulary import QUANTITIES, TARGET, Quantity
 from tests.scene import ROOM, UG, about, setup
 
 PACKAGE = Path(envcorr.__file__).parent

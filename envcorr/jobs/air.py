@@ -5,26 +5,13 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from envcorr.errors import Fault, InputError, Notice
-from envcorr.estimate import Estimate
-from envcorr.jobs.common import correlation_matrix, notices, usual_range_notices
+from envcorr.jobs.common import Contribution, correlation_matrix, notices, usual_range_notices
 from envcorr.model import plan_quantities
 from envcorr.plan import Assumption, Plan
 from envcorr.propagation import Budget, budget, perturbed
 from envcorr.setup import Setup
 
-__all__ = ["AirResult", "AirRow", "air_density"]
-
-
-@dataclass(frozen=True, slots=True)
-class AirRow:
-    """One input of the air density: what it was taken as, and its contribution to u [kg/m³], signed."""
-
-    name: str
-    label: str
-    kind: str
-    estimate: Estimate
-    origin: str
-    contribution: float
+__all__ = ["AirResult", "air_density"]
 
 
 @dataclass(frozen=True)
@@ -36,7 +23,7 @@ class AirResult:
     density: float
     u: float
     budget: Budget
-    rows: tuple[AirRow, ...]
+    rows: tuple[Contribution, ...]
     formula: str
     vapour_fraction: float | None
     relative_humidity: float | None
@@ -68,7 +55,7 @@ def air_density(setup: Setup, *, probability: float = 0.95) -> AirResult:
     )
     centres = plan.centres()
     rows = tuple(
-        AirRow(
+        Contribution(
             leaf.name,
             leaf.place.label,
             leaf.place.quantity.kind,

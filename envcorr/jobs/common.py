@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -10,9 +11,22 @@ from numpy.typing import NDArray
 
 from envcorr import units
 from envcorr.errors import Fault, InputError, Notice
+from envcorr.estimate import Estimate
 from envcorr.plan import Plan
 
-__all__ = ["correlation_matrix", "notices", "usual_range_notices"]
+__all__ = ["Contribution", "correlation_matrix", "notices", "usual_range_notices"]
+
+
+@dataclass(frozen=True, slots=True)
+class Contribution:
+    """One quantity's part in u: what it was taken as, and sensitivity times standard uncertainty, signed [SI]."""
+
+    name: str
+    label: str
+    kind: str
+    estimate: Estimate
+    origin: str
+    contribution: float
 
 
 def notices(plan: Plan, values: Sequence[Any]) -> tuple[Notice, ...]:

@@ -16,25 +16,13 @@ import numpy as np
 
 from envcorr.errors import Notice
 from envcorr.estimate import Estimate, Value
-from envcorr.jobs.common import correlation_matrix, notices, usual_range_notices
+from envcorr.jobs.common import Contribution, correlation_matrix, notices, usual_range_notices
 from envcorr.jobs.solving import Solution, bands_by_draws, correctable, plan_reading, reading_of, solve
 from envcorr.plan import Assumption, NotAssessed, Plan
 from envcorr.propagation import coverage_factor
 from envcorr.setup import Setup
 
-__all__ = ["MassEffect", "MassQuantity", "MassResult", "Told", "find_mass"]
-
-
-@dataclass(frozen=True, slots=True)
-class MassQuantity:
-    """One quantity's part in u: what it was taken as, and sensitivity times standard uncertainty [kg], signed."""
-
-    name: str
-    label: str
-    kind: str
-    estimate: Estimate
-    origin: str
-    contribution: float
+__all__ = ["MassEffect", "MassResult", "Told", "find_mass"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,7 +62,7 @@ class MassResult:
     conventional_mass: Told | None
     volume: Told | None
     air_density: Told | None
-    quantities: tuple[MassQuantity, ...]
+    quantities: tuple[Contribution, ...]
     effects: tuple[MassEffect, ...]
     not_assessed: tuple[NotAssessed, ...]
     assumed: tuple[Assumption, ...]
@@ -157,14 +145,14 @@ def _dof(plan: Plan, solved: Solution, reading: Estimate, own: float, bands: dic
     return u**4 / weights if weights > 0 else math.inf
 
 
-def _quantity_rows(plan: Plan, solved: Solution, reading: Estimate, own: float) -> tuple[MassQuantity, ...]:
+def _quantity_rows(plan: Plan, solved: Solution, reading: Estimate, own: float) -> tuple[Contribution, ...]:
     rows = [
-        MassQuantity(leaf.name, leaf.place.label, leaf.place.quantity.kind, leaf.estimate, leaf.origin, float(c))
+        Contribution(leaf.name, leaf.place.label, leaf.place.quantity.kind, leaf.estimate, leaf.origin, float(c))
         for leaf, c in zip(plan.leaves, solved.contributions, strict=True)
         if c
     ]
     if own:
-        rows.append(MassQuantity("reading", "reading", "mass", reading, "given", own))
+        rows.append(Contribution("reading", "reading", "mass", reading, "given", own))
     return tuple(sorted(rows, key=lambda row: -abs(row.contribution)))
 
 
