@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
+from functools import cached_property
 from typing import Any
 
 from envcorr.catalogue import Catalogue, Place
@@ -191,6 +192,25 @@ class Plan:
             else:
                 values[i] = node.function(*[values[j] for j in node.inputs])
         return values
+
+    @cached_property
+    def per_correction(self) -> float:
+        """How much of an error is left in the mass when the correction is solved for the mass itself: 1/(1 + dS/dm).
+
+        A correction in proportion to the mass is computed with the mass that it gives; at the best estimates. It is 1
+        but for light samples: 1.036 at 32 kg/m³.
+        """
+        row = next((j for j, leaf in enumerate(self.leaves) if leaf.name == "load.mass"), None)
+        if row is None or not self.nodes[self.targets["mass"]].centre:
+            return 1.0
+        every = range(len(self.effects))
+        step = 1e-3  # the correction is all but linear in the mass, so the size does not matter
+        values = [leaf.estimate.centre for leaf in self.leaves]
+        before = self.centres()
+        values[row] = values[row] * (1 + step)
+        after = self.evaluate(values, base=before, changed=row)
+        change = self.parts(after, known=True).total(every) - self.parts(before, known=True).total(every)
+        return 1 / (1 + float(change) / (step * float(self.leaves[row].estimate.centre)))
 
     def centres(self) -> list[Any]:
         """Return the value of every node at the best estimates."""

@@ -296,3 +296,21 @@ def test_a_set_up_file_supplies_the_rest(tmp_path):
     answer = run(f"--setup={file}", "--reading=1 g", "--density=1050 kg/m³")
     assert answer.exit_code == 0, answer.stderr
     assert "Conventional mass" in answer.stdout
+
+
+def test_the_room_check_and_the_mass_agree():
+    """What a room check says will be left after the correction is the uncertainty that the mass then has."""
+    from envcorr.jobs.room import check_room
+
+    said = {
+        **FOAM_AIR,
+        **JUST_BEFORE,
+        "load_density": normal(32.0, 0.2),
+        "load_density_kind": "envelope",
+        "load_open_cell_fraction": 0.0,
+        "balance_repeatability": 20 * UG,
+        "balance_scale_interval": 10 * UG,
+    }
+    one = find_mass(setup(said, reading=1.25e-3))
+    room = check_room(setup(said, load_mass=one.mass.value, target_resolution=1 * MG), draws=2**14)
+    assert room.corrected.whole.summary.u == pytest.approx(one.mass.u, rel=5e-3)

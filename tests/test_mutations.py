@@ -126,8 +126,8 @@ VALUES = (
     *('"0 m"', '"1 hPa"', '"99999 hPa"', '"1 m³"', '"1e59 V/m"', '"89°"', '"1e40 C"', '"23000 kg/m³"', '"0.5 kg/m³"'),
     *("0", "1", "-1", "1e-300", "1e300", "9" * 30, "0x" + "f" * 2000, "1" * 5000, "nan", "-inf", "true", "false"),
     *("[]", "{}", '""', "1979-05-27", "07:32:00", '["5 g"]', '{ value = "1 K" }', '{ u = "1e50 K" }', "[[[[[1]]]]]"),
-    *('{ low = "0 K", high = "1e9 K" }', '{ value = "5 g", u = "100 g" }', "{ value = 0.5, u = 1e9, dof = 1 }"),
-    *('{ value = "1 m", u = "1e6 m", dof = 1 }', '{ low = 1e-9, high = 1, shape = "log-uniform" }', "[" * 3000),
+    *('{ low = "0 K", high = "1e9 K" }', '{ value = "5 g", u = "100 g" }', "{ value = 0.5, u = 1e9, dof = 3 }"),
+    *('{ value = "1 m", u = "1e6 m", dof = 3 }', '{ low = 1e-9, high = 1, shape = "log-uniform" }', "[" * 3000),
     *('"yes"', '"solid"', '"kept shut"', '"just before"', '"difference"', '"conventional mass"', '"OIML R 111-1"'),
 )
 NUMBERS = (
@@ -239,7 +239,7 @@ def _other_of(groups: tuple[tuple[str, ...], ...], text: str, dice: random.Rando
 
 def _spread(text: str, dice: random.Random) -> str:
     """Give a plain value a spread as large as itself."""
-    spread = dice.choice(("u = {0}", "u = {0}, dof = 1", "half_width = {0}", 'half_width = {0}, shape = "arcsine"'))
+    spread = dice.choice(("u = {0}", "u = {0}, dof = 2.1", "half_width = {0}", 'half_width = {0}, shape = "arcsine"'))
     found = list(re.finditer(r'(?<= = )"[0-9][^"\n]*"$', text, re.MULTILINE))
     one = dice.choice(found) if found else None
     return f"{text[: one.start()]}{{ value = {one[0]}, {spread.format(one[0])} }}{text[one.end() :]}" if one else text

@@ -138,8 +138,9 @@ def _dof(raw: Mapping[str, Any]) -> float:
     if "dof" not in raw:
         return math.inf
     dof = units.parse(_plain(raw, "dof", "9"), "number")
-    if dof < 1:
-        raise EntryError("dof is below one.", "Degrees of freedom: readings less one.")
+    if dof <= 2:  # with fewer the standard deviation does not exist: JCGM 101:2008, 6.4.9.4
+        remedy = "Degrees of freedom are readings less one: take four readings, or the u of longer experience."
+        raise EntryError(f"dof = {dof:g} is too few for a spread to have any bound.", remedy)
     return dof
 
 

@@ -77,7 +77,8 @@ def minimum_weight(
 
     def corrected(mass: float) -> Value:
         values = values_at(mass)
-        return plan.parts(values).total(whole) - plan.parts(values, known=True).total(whole)
+        error = plan.parts(values).total(whole) - plan.parts(values, known=True).total(whole)
+        return plan.per_correction * error
 
     def culprit(mass: float, *, known: bool) -> str:
         values = values_at(mass)

@@ -1,8 +1,9 @@
 """Can this room reach the target resolution, and what spoils it?
 
 The error is the measured result less the measurand, on Monte Carlo draws; three totals of it are looked at: *as read*,
-*corrected* (less what a correction with the stated sensors would take out) and *treated* (corrected, with every
-effect that names a treatment set to zero), each for the surroundings alone and for the whole weighing.
+*corrected* (less what a correction with the stated sensors would take out, solved for the mass) and *treated*
+(corrected, with every effect that names a treatment set to zero), each for the surroundings alone and for the whole
+weighing.
 """
 
 from __future__ import annotations

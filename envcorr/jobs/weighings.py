@@ -77,7 +77,8 @@ class Weighings:
             return self.mean(lambda true, known: true.total(chosen))
         if state == "treated":
             chosen = [i for i in chosen if not self.plan.effects[i].effect.treatment]
-        return self.mean(lambda true, known: true.total(chosen) - known.total(chosen))
+        per = self.plan.per_correction
+        return self.mean(lambda true, known: per * (true.total(chosen) - known.total(chosen)))
 
     def effect(self, state: State, index: int) -> Value:
         """Return the error of one effect alone [kg]."""
@@ -86,7 +87,10 @@ class Weighings:
             return self.mean(lambda true, known: true.effect(index, defines=defines))
         if state == "treated" and self.plan.effects[index].effect.treatment:
             return 0.0
-        return self.mean(lambda true, known: true.effect(index, defines=defines) - known.effect(index, defines=defines))
+        per = self.plan.per_correction
+        return self.mean(
+            lambda true, known: per * (true.effect(index, defines=defines) - known.effect(index, defines=defines))
+        )
 
 
 class Run:
