@@ -38,6 +38,13 @@ QUANTITIES: tuple[Quantity, ...] = (
         internal=True,
     ),
     Quantity(
+        "air.formula_density",
+        "density",
+        "air density by the formula",
+        "CIPM-2007 as it stands, without the formula's own error.",
+        internal=True,
+    ),
+    Quantity(
         "air.formula_ratio",
         "fraction",
         "ratio of CoolProp's air density to that of CIPM-2007",
@@ -112,16 +119,13 @@ _COOLPROP_CO2 = 0.0004  # of CIPM-2007's reference air; CoolProp's humid air has
 
 
 def _density(
-    air_temperature: Value,
-    air_pressure: Value,
-    air_vapour_fraction: Value,
-    air_co2: Value,
-    air_formula_ratio: Value,
-    air_formula_u: Value,
-    air_formula_error: Value,
+    air_formula_density: Value, air_formula_ratio: Value, air_formula_u: Value, air_formula_error: Value
 ) -> Value:
-    density = air.density_cipm(air_temperature, air_pressure, air_vapour_fraction, air_co2)
-    return density * (air_formula_ratio * (1 + air_formula_u * air_formula_error))
+    return air_formula_density * (air_formula_ratio * (1 + air_formula_u * air_formula_error))
+
+
+def _cipm(air_temperature: Value, air_pressure: Value, air_vapour_fraction: Value, air_co2: Value) -> Value:
+    return air.density_cipm(air_temperature, air_pressure, air_vapour_fraction, air_co2)
 
 
 def _density_oiml(
@@ -349,6 +353,7 @@ WAYS: tuple[Way, ...] = (
         only_if=_density_is_given,
         at_best=("air_density",),
     ),
+    Way("air.formula_density", _cipm, "CIPM-2007", source=_CIPM),
     Way(
         "air.density",
         _density,

@@ -186,8 +186,9 @@ FAULTS = [
         f"air.temperature: has no spread. {UNKNOWN_SPREAD}",
     ),
     (
-        '[air]\ntemperature = { value = "20 °C", u = "1 K", dof = 0.5 }',
-        "air.temperature: dof is below one. Degrees of freedom: readings less one.",
+        '[air]\ntemperature = { value = "20 °C", u = "1 K", dof = 2 }',  # JCGM 101:2008, 6.4.9.4
+        "air.temperature: dof = 2 is too few for a spread to have any bound. Degrees of freedom are readings less one: "
+        "take four readings, or the u of longer experience.",
     ),
     (
         '[air]\ntemperature = { value = "20 °C", half_width = "1 K", dof = 9 }',

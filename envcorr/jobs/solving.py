@@ -13,7 +13,7 @@ from envcorr.errors import Fault, InputError
 from envcorr.estimate import Estimate, Value
 from envcorr.jobs.weighings import Run
 from envcorr.model import make_plan
-from envcorr.plan import Plan
+from envcorr.plan import Parts, Plan
 from envcorr.propagation import FIRST_BATCHES, draws
 from envcorr.setup import Setup
 
@@ -139,55 +139,94 @@ def _contributions(
 ) -> Solution:
     chosen = correctable(plan)
     row = mass_row(plan)
-    several = [*(chosen if by_effect else ()), *bands]
-    names = [name for name in TARGETS if name in plan.targets] if by_effect else []
-    contributions: list[Value] = []
-    effects: dict[int, list[Value]] = {i: [] for i in several}
-    targets: dict[str, tuple[Value, list[Value]]] = {name: (values[plan.targets[name]], []) for name in names}
-    slopes = _slopes_in_mass(plan, row, mass, values, leaf_values, names)
-    for j, leaf in enumerate(plan.leaves):
-        if leaf.estimate.is_exact or not plan.reach(j):
-            contributions.append(0.0)
-            for found in (*effects.values(), *(pair[1] for pair in targets.values())):
-                found.append(0.0)
-            continue
-        ends, at = [], []
-        for sign in (0.5, -0.5):
-            moved = list(leaf_values)
-            moved[j] = leaf.estimate.centre + 2 * sign * leaf.estimate.u
-            there = plan.evaluate(moved, base=values, changed=j)
-            parts = plan.parts(there)
-            ends.append((sign, parts))
-            at.append((sign, there))
-        moved_by = -per * _sum(sign * parts.total(chosen) for sign, parts in ends)
-        contributions.append(moved_by)
-        for i in several:
-            effects[i].append(per * _sum(sign * parts.effect(i) for sign, parts in ends))
-        for name in names:
-            direct = _sum(sign * there[plan.targets[name]] for sign, there in at)
-            targets[name][1].append(direct + slopes[name] * moved_by)
+    backwards = _Backwards(plan, values, leaf_values)
+    parts = plan.parts(values)
+    total = backwards.leaves(_seeds_of_total(plan, parts, chosen))
+    contributions = [-per * slope * leaf.estimate.u for slope, leaf in zip(total, plan.leaves, strict=True)]
+    contributions[row] = 0.0  # solved for, not given
+    effects: dict[int, list[Value]] = {}
+    for i in [*(chosen if by_effect else ()), *bands]:
+        slopes = backwards.leaves(_seeds_of_total(plan, parts, [i]))
+        effects[i] = [per * slope * leaf.estimate.u for slope, leaf in zip(slopes, plan.leaves, strict=True)]
+        effects[i][row] = 0.0
+    targets: dict[str, tuple[Value, list[Value]]] = {}
+    for name in [name for name in TARGETS if name in plan.targets] if by_effect else ():
+        node = plan.targets[name]
+        slopes = backwards.leaves({node: 1.0})
+        direct = [slope * leaf.estimate.u for slope, leaf in zip(slopes, plan.leaves, strict=True)]
+        direct[row] = 0.0
+        by_mass = slopes[row]
+        found = [own + by_mass * through for own, through in zip(direct, contributions, strict=True)]
+        targets[name] = (values[node], found)
     return Solution(mass, per, values, contributions, effects, targets)
 
 
-def _sum(terms: Any) -> Value:
-    total: Value = 0.0
-    for term in terms:
-        total = total + term
-    return total
+def _seeds_of_total(plan: Plan, parts: Parts, chosen: Sequence[int]) -> dict[int, Value]:
+    """Return the slopes of the chosen effects' total in the nodes that make it up (the product rule on Parts.total)."""
+    load: Value = sum((parts.loads[i] for i in chosen), 0.0)
+    gain: Value = sum((parts.gains[i] for i in chosen), 0.0)
+    change: Value = sum((parts.gain_changes[i] for i in chosen), 0.0)
+    seeds: dict[int, Value] = {}
+
+    def add(node: int | None, slope: Value) -> None:
+        if node is not None:
+            seeds[node] = seeds.get(node, 0.0) + slope
+
+    for i in chosen:
+        pull = plan.effects[i].true
+        add(pull.load, 1.0 + gain)
+        add(pull.gain, parts.mass + load)
+        if pull.gain != pull.gain_at_tare:
+            add(pull.gain, parts.tare_load)
+            add(pull.gain_at_tare, -parts.tare_load)
+    add(plan.targets["mass"], gain)
+    add(plan.targets["tare"], change)
+    return seeds
 
 
-def _slopes_in_mass(
-    plan: Plan, row: int, mass: Value, values: list[Any], leaf_values: list[Value], names: Sequence[str]
-) -> dict[str, Value]:
-    """Return the change of each target with the mass; all are linear in it."""
-    if not names:
-        return {}
-    moved = list(leaf_values)
-    moved[row] = mass * 1.5
-    there = plan.evaluate(moved, base=values, changed=row)
-    with np.errstate(divide="ignore", invalid="ignore"):
-        found = {n: np.nan_to_num((there[plan.targets[n]] - values[plan.targets[n]]) / (mass * 0.5)) for n in names}
-    return found
+class _Backwards:
+    """Slopes of a result in every leaf, node by node from the result back (reverse accumulation).
+
+    A law's own slopes are central differences in one input at a time, worked out once however many results ask.
+    """
+
+    def __init__(self, plan: Plan, values: list[Any], leaf_values: Sequence[Value]) -> None:
+        self.plan, self.values = plan, values
+        row = mass_row(plan)
+        uncertain = [j for j, leaf in enumerate(plan.leaves) if j == row or not leaf.estimate.is_exact]
+        self.active: set[int] = set().union(*(plan.reach(j) for j in uncertain))
+        self.step = {plan.leaves[j].node: plan.leaves[j].estimate.u for j in uncertain if j != row}
+        self.slopes: dict[int, list[Value]] = {}
+
+    def leaves(self, seeds: dict[int, Value]) -> list[Value]:
+        """Return the slope of the result in each leaf, from its slopes in some nodes."""
+        held: dict[int, Value] = dict(seeds)
+        for i in range(max(seeds, default=-1), -1, -1):
+            node = self.plan.nodes[i]
+            if i not in held or i not in self.active or node.function is None:
+                continue
+            for j, slope in zip(node.inputs, self._own(i), strict=True):
+                if j in self.active:
+                    held[j] = held.get(j, 0.0) + held[i] * slope
+        return [held.get(leaf.node, 0.0) for leaf in self.plan.leaves]
+
+    def _own(self, i: int) -> list[Value]:
+        if i not in self.slopes:
+            node = self.plan.nodes[i]
+            assert node.function is not None
+            inputs = [self.values[j] for j in node.inputs]
+            found: list[Value] = []
+            for k, j in enumerate(node.inputs):
+                if j not in self.active:
+                    found.append(0.0)
+                    continue
+                step = self.step.get(j)
+                if step is None:  # relative, and so small that no law bends within it
+                    step = np.where(np.equal(inputs[k], 0.0), 1e-9, np.abs(inputs[k]) * 1e-5)[()]
+                ends = [node.function(*inputs[:k], inputs[k] + s * step, *inputs[k + 1 :]) for s in (1.0, -1.0)]
+                found.append((ends[0] - ends[1]) / (2 * step))
+            self.slopes[i] = found
+        return self.slopes[i]
 
 
 def bands_by_draws(plan: Plan, mass: float, *, seed: int = 0, repeats: int = 1) -> dict[int, float]:
