@@ -521,3 +521,11 @@ def test_help(args):
     result = run(*args, "--help")
     assert result.exit_code == 0
     assert "Usage: envcorr" in result.stdout
+
+
+def test_air_outside_the_formulas_range_says_whose_density_it_is():
+    hot = run("air", "--temperature=40 °C", "--pressure=1000 hPa", "--humidity=40 %").stdout
+    assert "CIPM-2007 scaled to CoolProp's humid air" in hot
+    assert "2.2e-5" in " ".join(hot.split())  # whose uncertainty is no longer claimed
+    room = run("air", "--temperature=21 °C", "--pressure=1000 hPa", "--humidity=40 %").stdout
+    assert "CoolProp" not in room

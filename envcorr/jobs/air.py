@@ -38,7 +38,10 @@ def air_density(setup: Setup, *, probability: float = 0.95) -> AirResult:
     Raises :class:`InputError` where temperature, pressure or a measure of humidity is lacking.
     """
     direct = "air.density" in setup.estimates
+    formula = "as given" if direct else setup.choices.get("air.formula", "CIPM-2007")
     names = ["air.density"] if direct else ["air.density", "air.vapour_fraction", "air.relative_humidity"]
+    if formula == "CIPM-2007":
+        names.append("air.formula_ratio")
     try:
         plan = plan_quantities(setup, names)
     except InputError as error:
@@ -54,6 +57,7 @@ def air_density(setup: Setup, *, probability: float = 0.95) -> AirResult:
         correlation=correlation_matrix(plan),
     )
     centres = plan.centres()
+    ratio = float(centres[plan.targets["air.formula_ratio"]]) if "air.formula_ratio" in plan.targets else 1.0
     rows = tuple(
         Contribution(
             leaf.name,
@@ -73,7 +77,7 @@ def air_density(setup: Setup, *, probability: float = 0.95) -> AirResult:
         u=found.u,
         budget=found,
         rows=tuple(sorted(rows, key=lambda row: -abs(row.contribution))),
-        formula="as given" if direct else setup.choices.get("air.formula", "CIPM-2007"),
+        formula=formula if ratio == 1.0 else f"{formula} scaled to CoolProp's humid air",
         vapour_fraction=None if direct else float(centres[plan.targets["air.vapour_fraction"]]),
         relative_humidity=None if direct else float(centres[plan.targets["air.relative_humidity"]]),
         notices=(*usual_range_notices(plan), *notices(plan, centres)),
