@@ -13,6 +13,7 @@ from typing import Any
 
 import numpy as np
 
+from envcorr import materials
 from envcorr.catalogue import CATALOGUE, Place, nearest
 from envcorr.errors import Fault, InputError
 from envcorr.estimate import Estimate
@@ -27,6 +28,8 @@ __all__ = ["REQUIRED", "parse_setup", "place_of", "read_setup"]
 
 REQUIRED = {"target.resolution": '[target] resolution = "0.1 mg"', "load.mass": '[load] mass = "5 g"'}
 """What a room check cannot do without, and how to write it."""
+MATERIALS = ("load.material", "container.material")
+"""Entries that name a material, whose density they give."""
 _HUMIDITIES = ("humidity", "dew_point", "wet_bulb")
 _HEADS = [f"{moment}{sensor}" for moment in ("tare.", "adjusted.", "") for sensor in ("sensors.", "")]
 _YES_NO = {True: "yes", False: "no"}
@@ -82,6 +85,7 @@ class _Reader:
         self.choices: dict[str, str] = {}
         self.correlations: list[Correlation] = []
         self.waived: list[str] = []
+        self.materials: dict[str, Any] = {}
         self.written: dict[str, str] = {}
         self.title = ""
 
@@ -108,6 +112,9 @@ class _Reader:
     def _entry(self, name: str, raw: Any) -> None:
         if name == "target.waived":
             self._waived(raw)
+            return
+        if name in MATERIALS:
+            self.materials[name] = raw
             return
         name = _full_name(name)
         choice = CATALOGUE.choices.get(name)
@@ -191,8 +198,33 @@ class _Reader:
             else:
                 self.correlations.append(Correlation(names[0], names[1], float(coefficient)))
 
+    def _material(self, name: str, raw: Any) -> None:
+        """Put a material's density in the place of a given one, at the air's temperature."""
+        section = name.partition(".")[0]
+        given = [f"{section}.density"] + (["load.volume"] if section == "load" else [])
+        beside = [one for one in given if one in self.estimates]
+        if beside:
+            self.fault(name, f"is given beside {' and '.join(beside)}.", "Keep one.")
+            return
+        if not isinstance(raw, str):
+            self.fault(name, f"{shown(raw)} is not a name.", 'Write material = "polypropylene".')
+            return
+        try:
+            material = materials.find(raw)
+        except InputError as error:
+            self.faults.extend(Fault(name, fault.problem, fault.remedy) for fault in error.faults)
+            return
+        air = self.estimates.get("air.temperature")
+        at = float(air.centre) if air else materials.REFERENCE_TEMPERATURE
+        self.estimates[f"{section}.density"] = materials.density(material, at)
+        self.written[name] = f"{material.name} ({material.source})"
+        if section == "load":
+            self.choices.setdefault("load.density_kind", material.kind)
+
     def check_together(self) -> None:
         """Find what is wrong only with several entries at once."""
+        for name, raw in self.materials.items():
+            self._material(name, raw)
         for moment in MOMENTS:
             head = f"{moment}." if moment else ""
             self._one_humidity(head)
