@@ -36,6 +36,17 @@ CHOICES: tuple[Choice, ...] = (
         source="the cautious of the two",
     ),
     Choice(
+        "balance.corrects_buoyancy",
+        "whether the balance or its software already corrects for the air",
+        {"yes": "the reading is already a mass", "no": "the reading is a weighing in air"},
+        default="no",
+        source="a balance shows what it weighs in air, unless it was set otherwise (common practice, no source)",
+        notes={
+            "yes": "The reading was taken as already corrected for the air's buoyancy, so it is not corrected again. "
+            "Which air and which density the balance used is not known here, and does not enter the uncertainty."
+        },
+    ),
+    Choice(
         "load.density_kind",
         "kind of density",
         {

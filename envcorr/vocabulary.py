@@ -81,7 +81,8 @@ class Choice:
     """A named word out of a few; it guards ways and effects, never a branch in a formula.
 
     ``default`` is what counts where nothing was said ("" for: not said); ``options`` maps each word to its meaning.
-    ``refused`` maps a word that people use to the reason why it cannot be used here.
+    ``refused`` maps a word that people use to the reason why it cannot be used here; ``notes`` a word to what to mind
+    where it was chosen.
     """
 
     name: str
@@ -90,6 +91,7 @@ class Choice:
     default: str = ""
     source: str = ""
     refused: dict[str, str] | None = None
+    notes: dict[str, str] | None = None
 
 
 _K0 = ZERO_CELSIUS.value

@@ -314,3 +314,13 @@ def test_the_room_check_and_the_mass_agree():
     one = find_mass(setup(said, reading=1.25e-3))
     room = check_room(setup(said, load_mass=one.mass.value, target_resolution=1 * MG), draws=2**14)
     assert room.corrected.whole.summary.u == pytest.approx(one.mass.u, rel=5e-3)
+
+
+def test_a_corrected_reading_is_not_corrected_twice():
+    """Where the balance corrects for the air itself, the reading is the mass, and that is said."""
+    once = mass(reading=1e-3, load_density=1050.0, **AIR)
+    kept = mass(reading=1e-3, load_density=1050.0, balance_corrects_buoyancy="yes", **AIR)
+    assert kept.mass.value == 1e-3
+    assert once.correction > 0.9 * 1e-6  # 1.05 mg per gram less 0.15 mg, by hand
+    assert any("not corrected again" in n.sentence for n in kept.notices)
+    assert not any("not corrected again" in n.sentence for n in once.notices)

@@ -38,6 +38,7 @@ EFFECT = Effect(
     load=load,
     gain=gain,
     correctable=True,
+    when={"balance.corrects_buoyancy": ("no",)},  # what is corrected already is not corrected twice
     needed="always",
     definition=True,
     test="Weigh the sample beside a steel weight of like mass on two days of different pressure.",

@@ -32,6 +32,10 @@ class Contribution:
 def notices(plan: Plan, values: Sequence[Any]) -> tuple[Notice, ...]:
     """Return what the plan's checks have to say about the nodes' values (floats, or arrays over the draws)."""
     found: dict[str, Notice] = {}
+    for name, word in plan.setup.choices.items():
+        note = (plan.catalogue.choices[name].notes or {}).get(word)
+        if note:
+            found[note] = Notice(name, note)
     best = plan.centres()
     for planned in plan.checks:
         # a remark concerns the best estimate, a warning every draw
