@@ -68,11 +68,11 @@ FOAM: dict[str, Said] = {
     "air_co2": 4e-4,
     "target_resolution": 10 * MG,
 }
-"""The air of foam "Larkspur": 1.111 01 kg/m³."""
+"""The air of a light foam: 1.111 01 kg/m³."""
 
 
 def foam(mass: float, kind: str, density: float | Estimate, **said: Said) -> Setup:
-    """Return foam "Larkspur", of a mass [kg] and a density [kg/m³] of some kind."""
+    """Return a light foam, of a mass [kg] and a density [kg/m³] of some kind."""
     return setup(FOAM, {"load_mass": mass, "load_density_kind": kind, "load_density": density}, said)
 
 

@@ -17,11 +17,11 @@ from envcorr.jobs import room as room_job
 EXAMPLE = Path(envcorr.__file__).parent / "examples" / "powder_station.toml"
 FAST = ("--draws", "16384")
 
-# An invented case: foam "Larkspur", 21.4 °C, 42 %, 400 ppm of CO2, 943.10 hPa; its air by CIPM-2007 (Picard et al.,
+# An invented case: a light foam, 21.4 °C, 42 %, 400 ppm of CO2, 943.10 hPa; its air by CIPM-2007 (Picard et al.,
 # Metrologia 45 (2008) 149) in an independent computation is 1.111 01 kg/m³
 FOAM_AIR = 1.11101
 FOAM = """
-title = "Foam Larkspur (invented)"
+title = "Light foam (invented)"
 [target]
 resolution = "1 mg"
 [air]

@@ -8,7 +8,7 @@ from scipy import optimize, stats
 from envcorr.jobs.room import check_room
 from tests.scene import MG, ROOM, UG, about, normal, row, setup
 
-# Quarry Lane: an invented room with figures from another computation; d 10 µg, s 6 µg, a sample of 15 mg
+# a small bench: an invented room with figures from another computation; d 10 µg, s 6 µg, a sample of 15 mg
 QUARRY_LANE = {
     **ROOM,
     "load_mass": 15 * MG,

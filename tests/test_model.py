@@ -362,7 +362,7 @@ def test_what_is_said_of_the_temperature_at_the_tare():
 
 @pytest.mark.parametrize(("tare", "shift"), [(0.120, 54.0), (0.008, 3.6)])
 def test_a_gain_that_changed_since_the_tare_acts_on_the_container(tare, shift):
-    """Quarry Lane: 1.5 ppm/K x 0.3 K x 120 g = 54 µg, of 8 g 3.6 µg; in the effect's row and in the total."""
+    """a small bench: 1.5 ppm/K x 0.3 K x 120 g = 54 µg, of 8 g 3.6 µg; in the effect's row and in the total."""
     said = {
         "container_mass": tare,
         "container_density": 8000.0,
