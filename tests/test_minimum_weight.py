@@ -9,7 +9,7 @@ from envcorr.jobs.room import check_room
 from tests.scene import MG, ROOM, UG, about, normal, row, setup
 
 # a small bench: an invented room with figures from another computation; d 10 µg, s 6 µg, a sample of 15 mg
-QUARRY_LANE = {
+BENCH = {
     **ROOM,
     "load_mass": 15 * MG,
     "balance_scale_interval": 10 * UG,
@@ -21,17 +21,17 @@ SLACK = 0.02  # the mass is found to 0.1 %, the quantile of 4096 draws of the er
 
 
 def least(*parts, **said):
-    return check_room(setup(QUARRY_LANE, *parts, said)).minimum_weight
+    return check_room(setup(BENCH, *parts, said)).minimum_weight
 
 
-def test_quarry_lane():
+def test_bench():
     """2 s/0.10 % (USP <41>, from memory): 12 mg."""
     found = least()
     assert found.accuracy == 0.001
     assert found.repeatability.mass / MG == pytest.approx(12.0, rel=1e-9)
 
 
-def test_quarry_lane_in_a_draught():
+def test_bench_in_a_draught():
     """A draught that adds 7 µg: s of sqrt(6² + 7²) = 9.22 µg makes it 18.4 mg, and 15 mg are too little."""
     scatter = {"balance_scatter_on": math.sqrt(8**2 + 7**2) * UG, "balance_scatter_off": 8 * UG}
     found = least(scatter)
@@ -96,7 +96,7 @@ def test_uncorrected_water():
 def test_a_bias_beside_the_scatter():
     """Density 2000 kg/m³: P(|b m + s z| <= a m) = 0.95, solved by SciPy."""
     said = {"load_density": 2000.0}
-    bias = row(check_room(setup(QUARRY_LANE, said)), "buoyancy").mean_error / (15 * MG)
+    bias = row(check_room(setup(BENCH, said)), "buoyancy").mean_error / (15 * MG)
     assert bias == pytest.approx(-1.19931 * (1 / 2000 - 1 / 8000), rel=1e-3)
 
     def missing(mass):
