@@ -10,6 +10,7 @@ import pytest
 import envcorr
 from envcorr.intake.setup_file import read_setup
 from envcorr.jobs.room import check_room
+from envcorr.setup import Setup
 
 FOLDER = Path(envcorr.__file__).parent / "examples"
 VERDICTS = {
@@ -44,3 +45,17 @@ def test_a_band_alone_stands_in_the_way_of_the_powder():
     assert static.passes_without is True
     assert static.u > 10 * static.first_order_u
     assert "static_charge" in result.first_order.blind_to
+
+
+def test_the_readings_are_those_of_the_script(tmp_path):
+    """The table is what its seeded script makes, and its masses come back from it within their uncertainty."""
+    from envcorr.examples import make_readings
+    from envcorr.jobs.mass_file import convert
+
+    source = FOLDER / "readings.csv"
+    header, *lines = source.read_text(encoding="utf-8").splitlines()
+    rows = make_readings.rows()
+    assert header.split(",") == list(rows[0])
+    assert lines == [",".join(row.values()) for row in rows]
+    summary = convert(source, tmp_path / "masses.csv", Setup(choices={"adjusted.when": "just before"}))
+    assert (summary.rows, summary.failed) == (40, 0)
