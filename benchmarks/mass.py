@@ -118,7 +118,7 @@ def _against_library() -> Outcome:
 
     from envcorr.intake.setup_file import parse_setup
     from envcorr.intake.table import Column
-    from envcorr.jobs.mass_table import masses
+    from envcorr.jobs.mass_table import RowSolver
 
     rows, few = 65_536, 200
     random = np.random.default_rng(3)
@@ -132,7 +132,7 @@ def _against_library() -> Outcome:
     setup = parse_setup(OPTIONS, require=())
 
     def ours() -> None:
-        masses(setup, columns, {}, rows)
+        RowSolver(setup).solve(columns, {}, rows)
 
     def theirs() -> None:
         for i in range(few):

@@ -14,6 +14,7 @@ if TYPE_CHECKING:
 
 __all__ = ["mass"]
 
+ALSO = {"conventional-mass": "conventional mass", "volume": "volume"}
 OPTIONS = {
     "reading": ("reading", "What the display shows of the load alone."),
     "gross": ("gross", "What it shows of load and container; needs --tare."),
@@ -42,6 +43,11 @@ OPTIONS = {
 @click.option("--setup", metavar="FILE", help="A set-up file for all that the options do not say.")
 @set_option
 @click.option("--probability", metavar="TEXT", default="95 %", show_default=True, help="Of the expanded uncertainty.")
+@click.option(
+    "--monte-carlo", is_flag=True, help="A coverage interval by draws too (JCGM 101), of each row of a table."
+)
+@click.option("--draws", type=click.IntRange(2**10, 2**20), help="How many for that: 16384, of a row 4096.")
+@click.option("--also", multiple=True, type=click.Choice(tuple(ALSO)), help="Tell that of each row too, as columns.")
 @click.option("--seed", type=click.IntRange(min=0), default=0, show_default=True, help="Of the draws.")
 @json_option
 def mass(
@@ -52,6 +58,9 @@ def mass(
     setup: str | None,
     changes: Sequence[str],
     probability: str,
+    monte_carlo: bool,
+    draws: int | None,
+    also: Sequence[str],
     seed: int,
     as_json: bool,
     **given: str | None,
@@ -71,12 +80,25 @@ def mass(
     else:
         read = read_setup(setup, changes=every, require=())
     coverage = coverage_probability(probability)
+    if draws is not None and not monte_carlo:
+        raise click.UsageError("--draws needs --monte-carlo.")
+    if table is None and (out or mapped or also):
+        raise click.UsageError("--out, --column and --also are for a TABLE.")
     if table is not None:
         if out is None:
             raise click.UsageError("A table needs --out FILE.")
-        _table(table, out, read, mapped=mapped, force=force, probability=coverage, seed=seed, as_json=as_json)
+        count = (draws or 2**12) if monte_carlo else 0
+        how = {
+            "mapped": mapped,
+            "force": force,
+            "probability": coverage,
+            "beside": [ALSO[word] for word in also],
+            "count": count,
+            "seed": seed,
+        }
+        _table(table, out, read, as_json=as_json, **how)
         return
-    result = find_mass(read, probability=coverage, seed=seed)
+    result = find_mass(read, probability=coverage, count=(draws or 2**14) if monte_carlo else 0, seed=seed)
     if as_json:
         from envcorr.render import json_mass
 

@@ -71,6 +71,14 @@ QUANTITIES: tuple[Quantity, ...] = (
         "load.true_density",
         "density",
         "density of what displaces air",
+        "The load's corrected density, at the temperature that it has.",
+        varies="never",
+        internal=True,
+    ),
+    Quantity(
+        "load.corrected_density",
+        "density",
+        "density as it was found, corrected",
         "The load's density, corrected for the buoyancy under which it was found.",
         varies="never",
         internal=True,
@@ -122,6 +130,11 @@ def _density(
     air_formula_density: Value, air_formula_ratio: Value, air_formula_u: Value, air_formula_error: Value
 ) -> Value:
     return air_formula_density * (air_formula_ratio * (1 + air_formula_u * air_formula_error))
+
+
+def _density_slopes(formula_density: Value, ratio: Value, u: Value, error: Value) -> tuple[Value, ...]:
+    factor = 1 + u * error
+    return ratio * factor, formula_density * factor, formula_density * ratio * error, formula_density * ratio * u
 
 
 def _cipm(air_temperature: Value, air_pressure: Value, air_vapour_fraction: Value, air_co2: Value) -> Value:
@@ -221,6 +234,14 @@ _OUTSIDE_OIML = Check(
 
 def _all_cells_closed(given: Mapping[str, Any]) -> bool:
     return "load.solid_density" not in given and not np.any(given.get("load.open_cell_fraction", 1.0))
+
+
+def _expands(given: Mapping[str, Any]) -> bool:
+    return "load.expansion" in given
+
+
+def _expanded(density: Value, expansion: Value, temperature: Value, at: Value) -> Value:
+    return density / (1 + expansion * (temperature - at))
 
 
 def _no_container(given: Mapping[str, Any]) -> bool:
@@ -326,7 +347,13 @@ WAYS: tuple[Way, ...] = (
         "about the present one",
         at_best=("air_temperature",),
     ),
-    Way("air.vapour_fraction", _vapour_from_humidity, "from the relative humidity", source=_CIPM),
+    Way(
+        "air.vapour_fraction",
+        _vapour_from_humidity,
+        "from the relative humidity",
+        source=_CIPM,
+        slopes=air.vapour_fraction_slopes,
+    ),
     Way("air.vapour_fraction", _vapour_from_dew_point, "from the dew point", source=_CIPM),
     Way(
         "air.vapour_fraction",
@@ -353,7 +380,7 @@ WAYS: tuple[Way, ...] = (
         only_if=_density_is_given,
         at_best=("air_density",),
     ),
-    Way("air.formula_density", _cipm, "CIPM-2007", source=_CIPM),
+    Way("air.formula_density", _cipm, "CIPM-2007", source=_CIPM, slopes=air.density_cipm_slopes),
     Way(
         "air.density",
         _density,
@@ -361,6 +388,7 @@ WAYS: tuple[Way, ...] = (
         source=_CIPM,
         when={"air.formula": ("CIPM-2007",)},
         checks=(_OUTSIDE_CIPM, _STATION_PRESSURE),
+        slopes=_density_slopes,
     ),
     Way(
         "air.density",
@@ -373,6 +401,25 @@ WAYS: tuple[Way, ...] = (
     # load
     Way(
         "load.true_density",
+        lambda load_corrected_density, load_expansion, load_density_temperature, air_temperature, load_warmer_by: (
+            _expanded(
+                load_corrected_density, load_expansion, air_temperature + load_warmer_by, load_density_temperature
+            )
+        ),
+        "at the load's own temperature",
+        only_if=_expands,
+    ),
+    Way(
+        "load.true_density",
+        lambda load_corrected_density, load_expansion, load_density_temperature, air_temperature: _expanded(
+            load_corrected_density, load_expansion, air_temperature, load_density_temperature
+        ),
+        "at the temperature of the air",
+        only_if=_expands,
+    ),
+    Way("load.true_density", lambda load_corrected_density: load_corrected_density, "as found"),
+    Way(
+        "load.corrected_density",
         lambda load_density, adjusted_factor, air_density: buoyancy.density_from_uncorrected(
             load_density, air_density, adjusted_factor
         ),
@@ -381,7 +428,7 @@ WAYS: tuple[Way, ...] = (
         checks=(_UNCORRECTED,),
     ),
     Way(
-        "load.true_density",
+        "load.corrected_density",
         lambda load_density: load_density,
         "as given",
         when={"load.density_from": ("corrected",)},

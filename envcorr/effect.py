@@ -14,9 +14,10 @@ from typing import Any
 
 from envcorr.vocabulary import Choice, Quantity
 
-__all__ = ["Answer", "Check", "Effect", "Function", "Way", "parameters"]
+__all__ = ["Answer", "Check", "Effect", "Function", "OnlyIf", "Way", "parameters"]
 
 Function = Callable[..., Any]
+OnlyIf = Callable[[Mapping[str, Any]], bool]
 
 
 @cache
@@ -38,7 +39,7 @@ class Check:
     sentence: str
     source: str = ""
     level: str = "warning"
-    only_if: Callable[[Mapping[str, Any]], bool] | None = None
+    only_if: OnlyIf | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -48,7 +49,8 @@ class Way:
     ``gives`` is the quantity's name, with ``tare.`` or ``adjusted.`` in front where the way serves that moment only.
     ``when`` maps the names of choices to the words for which the way may be used. The parameters listed in
     ``at_best`` are supplied at their best estimates, never drawn. ``only_if`` sees the best estimates that were
-    given (name to SI value) and may decline.
+    given (name to SI value) and may decline. ``slopes`` returns the partial derivatives of ``function`` in its
+    parameters, in order, from the same arguments; without it they are found by differences.
     """
 
     gives: str
@@ -56,9 +58,10 @@ class Way:
     label: str
     source: str = ""
     when: Mapping[str, tuple[str, ...]] | None = None
-    only_if: Callable[[Mapping[str, Any]], bool] | None = None
+    only_if: OnlyIf | None = None
     at_best: tuple[str, ...] = ()
     checks: tuple[Check, ...] = ()
+    slopes: Function | None = None
 
 
 @dataclass(frozen=True, slots=True)

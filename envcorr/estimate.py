@@ -48,7 +48,9 @@ class Estimate:
     @property
     def is_exact(self) -> bool:
         """Whether there is no spread at all."""
-        return self.shape == "fixed" or not np.any(self.spread)
+        if self.shape == "fixed":
+            return True
+        return not np.any(self.spread) if isinstance(self.spread, np.ndarray) else not self.spread
 
     @property
     def mean(self) -> Value:

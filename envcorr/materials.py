@@ -10,10 +10,13 @@ from importlib.resources import files
 
 from envcorr.constants import STANDARD_PRESSURE, ZERO_CELSIUS
 from envcorr.errors import Fault, InputError
-from envcorr.estimate import Estimate
+from envcorr.estimate import Estimate, Value
 from envcorr.laws import water
 
-__all__ = ["REFERENCE_TEMPERATURE", "Material", "density", "find", "names"]
+__all__ = ["NAMED_BY", "REFERENCE_TEMPERATURE", "Material", "density", "entries", "expansion", "find", "names"]
+
+NAMED_BY = ("load.material", "container.material")
+"""Entries that name a material, whose density they give."""
 
 REFERENCE_TEMPERATURE = ZERO_CELSIUS.value + 20
 """At which the table holds [K] (OIML R 111-1:2004, B.7)."""
@@ -76,22 +79,46 @@ def find(name: str) -> Material:
     return found
 
 
-def density(material: Material, temperature: float = REFERENCE_TEMPERATURE) -> Estimate:
-    """Return the density of a material [kg/m³] at a temperature [K], with its standard uncertainty.
+def density(material: Material, temperature: Value = REFERENCE_TEMPERATURE) -> Estimate:
+    """Return the density of a material [kg/m³] at a temperature [K] (or a column), with its standard uncertainty.
 
     A solid follows its expansion from 20 °C, rho/(1 + beta (T - 293.15 K)), where the table knows it.
     """
     if material.name == "water":
-        pressure = STANDARD_PRESSURE.value
-        return Estimate(
-            float(water.density(temperature, pressure)), "normal", float(water.density_uncertainty(temperature))
-        )
+        at = water.density(temperature, STANDARD_PRESSURE.value)
+        return Estimate(at, "normal", water.density_uncertainty(temperature))
     if material.name in _LIQUIDS:
         from CoolProp.CoolProp import PropsSI
 
-        value = float(PropsSI("D", "T", temperature, "P", STANDARD_PRESSURE.value, _LIQUIDS[material.name]))
+        value = PropsSI("D", "T", temperature, "P", STANDARD_PRESSURE.value, _LIQUIDS[material.name])
         return Estimate(value, "normal", value * _LIQUID_RELATIVE_U)
     assert material.density is not None
     assert material.u is not None
     stretch = 1 + (material.expansion or 0.0) * (temperature - REFERENCE_TEMPERATURE)
     return Estimate(material.density / stretch, "normal", material.u / stretch)
+
+
+def expansion(material: Material, temperature: Value = REFERENCE_TEMPERATURE) -> Value | None:
+    """Return the cubic expansion coefficient [1/K] at a temperature [K], or None where the table does not know it.
+
+    That of a liquid is the slope of its formula.
+    """
+    if material.density is not None:
+        return material.expansion
+    warm, cold = (density(material, temperature + step).centre for step in (0.5, -0.5))
+    return 2 * (cold - warm) / (cold + warm)
+
+
+def entries(name: str, material: Material, temperature: Value | None) -> dict[str, Estimate]:
+    """Return what naming a material gives: its density at a temperature [K], and for a load how it goes on from there.
+
+    ``name`` is one of :data:`NAMED_BY`; without a temperature the density is that at 20 °C.
+    """
+    body = name.partition(".")[0]
+    found = {f"{body}.density": density(material, REFERENCE_TEMPERATURE if temperature is None else temperature)}
+    if body == "load" and temperature is not None:
+        slope = expansion(material, temperature)
+        if slope is not None:
+            found["load.expansion"] = Estimate(slope)
+            found["load.density_temperature"] = Estimate(temperature)
+    return found

@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from functools import cached_property
 from typing import Any
 
 from envcorr.catalogue import Catalogue, Place
-from envcorr.effect import Answer, Check, Effect, Function
+from envcorr.effect import Answer, Check, Effect, Function, OnlyIf
 from envcorr.estimate import Estimate, Value
 from envcorr.setup import Setup
 from envcorr.vocabulary import Varies
@@ -24,6 +24,7 @@ __all__ = [
     "PlannedCheck",
     "PlannedEffect",
     "Pull",
+    "is_zero",
 ]
 
 
@@ -41,6 +42,12 @@ class Leaf:
         """The dotted name."""
         return self.place.name
 
+    def taken_from(self, given: Mapping[str, Estimate]) -> Estimate:
+        """Return the estimate that some given ones have for it: its own, that of its quantity, or as it was."""
+        if self.origin != "given":
+            return self.estimate
+        return given.get(self.name) or given.get(self.place.quantity.name) or self.estimate
+
     @property
     def varies(self) -> Varies:
         """Whether a repeat draws it anew; the error of a sensor stays."""
@@ -49,12 +56,18 @@ class Leaf:
 
 @dataclass(frozen=True, slots=True)
 class Node:
-    """A call of ``function`` on earlier nodes, a leaf, or a constant; ``centre`` is its value at the best estimates."""
+    """A call of ``function`` on earlier nodes, a leaf, or a constant; ``centre`` is its value at the best estimates.
+
+    ``slopes`` returns the partial derivatives of the function in its inputs, where it has them; ``best_of`` is the node
+    whose best estimate a constant holds.
+    """
 
     function: Function | None
     inputs: tuple[int, ...]
     centre: Any
     leaf: int = -1
+    slopes: Function | None = None
+    best_of: int = -1
 
 
 @dataclass(frozen=True, slots=True)
@@ -112,7 +125,8 @@ class PlannedCheck:
     kinds: tuple[str, ...]
 
 
-def _is_zero(value: Value) -> bool:
+def is_zero(value: Value) -> bool:
+    """Return whether a value is exactly nothing, for all rows or draws at once."""
     return isinstance(value, float) and value == 0.0
 
 
@@ -120,8 +134,8 @@ def _sum(values: Sequence[Value]) -> Value:
     """Return the sum; what is exactly nothing costs nothing."""
     total: Value = 0.0
     for value in values:
-        if not _is_zero(value):
-            total = value if _is_zero(total) else total + value
+        if not is_zero(value):
+            total = value if is_zero(total) else total + value
     return total
 
 
@@ -139,8 +153,8 @@ class Parts:
     def effect(self, index: int, *, defines: bool = False) -> Value:
         """Return what the effect alone adds to the net reading [kg]."""
         load, gain, change = self.loads[index], self.gains[index], self.gain_changes[index]
-        error = load if _is_zero(gain) else load + gain * (self.mass + load)
-        return _sum([error, 0.0 if _is_zero(change) else change * self.tare_load, self.definition * defines])
+        error = load if is_zero(gain) else load + gain * (self.mass + load)
+        return _sum([error, 0.0 if is_zero(change) else change * self.tare_load, self.definition * defines])
 
     def total(self, chosen: Sequence[int]) -> Value:
         """Return what the chosen effects together add to the net reading [kg], over the measurand.
@@ -151,8 +165,8 @@ class Parts:
         load = _sum([self.loads[i] for i in chosen])
         gain = _sum([self.gains[i] for i in chosen])
         change = _sum([self.gain_changes[i] for i in chosen])
-        error = load if _is_zero(gain) else load + gain * (self.mass + load)
-        return _sum([error, 0.0 if _is_zero(change) else change * self.tare_load, self.definition])
+        error = load if is_zero(gain) else load + gain * (self.mass + load)
+        return _sum([error, 0.0 if is_zero(change) else change * self.tare_load, self.definition])
 
 
 @dataclass(frozen=True)
@@ -169,6 +183,7 @@ class Plan:
     unused: tuple[str, ...]
     checks: tuple[PlannedCheck, ...]
     targets: Mapping[str, int]
+    decisions: tuple[tuple[OnlyIf, bool], ...]
     _order: tuple[int, ...] = field(repr=False)
     _reach: tuple[frozenset[int], ...] = field(repr=False)
 
@@ -192,6 +207,33 @@ class Plan:
             else:
                 values[i] = node.function(*[values[j] for j in node.inputs])
         return values
+
+    def renewed(self, setup: Setup) -> Plan | None:
+        """Return the same plan for a set-up that gives the same entries with other numbers, without planning anew.
+
+        None where it would be planned otherwise.
+        """
+        before, now = self.setup, setup.estimates
+        if setup.choices != before.choices or now.keys() != before.estimates.keys():
+            return None
+        if any(now[name].is_exact != estimate.is_exact for name, estimate in before.estimates.items()):
+            return None
+        centres = {name: estimate.centre for name, estimate in now.items()}
+        if any(only_if(centres) != answer for only_if, answer in self.decisions):
+            return None
+        leaves = tuple(replace(leaf, estimate=leaf.taken_from(now)) for leaf in self.leaves)
+        nodes: list[Node] = []
+        for node in self.nodes:
+            if node.leaf >= 0:
+                centre = leaves[node.leaf].estimate.centre
+            elif node.best_of >= 0:
+                centre = nodes[node.best_of].centre
+            elif node.function is None:
+                centre = node.centre
+            else:
+                centre = node.function(*[nodes[i].centre for i in node.inputs])
+            nodes.append(Node(node.function, node.inputs, centre, node.leaf, node.slopes, node.best_of))
+        return replace(self, setup=setup, nodes=tuple(nodes), leaves=leaves)
 
     @cached_property
     def per_correction(self) -> float:

@@ -10,7 +10,7 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 from envcorr.catalogue import Catalogue, Place
-from envcorr.effect import Check, Effect, Function, Way, parameters
+from envcorr.effect import Check, Effect, Function, OnlyIf, Way, parameters
 from envcorr.estimate import Estimate, Value
 from envcorr.plan import Assumption, Leaf, Node, PlannedCheck, Pull
 from envcorr.setup import Setup
@@ -47,15 +47,16 @@ class Planner:
         self.stack: list[str] = []
         self.ways_used: dict[str, list[tuple[Way, Place, int]]] = {}
         self.assumed: dict[str, Assumption] = {}
+        self.decisions: dict[OnlyIf, bool] = {}
 
     # nodes -----------------------------------------------------------------------------------------------------
 
-    def call(self, function: Function, inputs: tuple[int, ...]) -> int:
+    def call(self, function: Function, inputs: tuple[int, ...], slopes: Function | None = None) -> int:
         """Return the node of a function of earlier nodes, made once."""
         key = (id(function), inputs)
         if key not in self.keys:
             centre = function(*[self.nodes[i].centre for i in inputs])
-            self.keys[key] = self.append(Node(function, inputs, centre))
+            self.keys[key] = self.append(Node(function, inputs, centre, slopes=slopes))
         return self.keys[key]
 
     def constant(self, value: Any) -> int:
@@ -88,6 +89,14 @@ class Planner:
     def applies(self, when: Mapping[str, tuple[str, ...]] | None) -> bool:
         """Return whether the choices are among the words that a guard allows."""
         return all(self.word(name) in options for name, options in (when or {}).items())
+
+    def allows(self, only_if: OnlyIf | None) -> bool:
+        """Return whether the best estimates that were given satisfy a way or a check."""
+        if only_if is None:
+            return True
+        if only_if not in self.decisions:
+            self.decisions[only_if] = only_if(self.centres_given)
+        return self.decisions[only_if]
 
     # quantities ------------------------------------------------------------------------------------------------
 
@@ -204,7 +213,7 @@ class Planner:
         return False
 
     def _by_way(self, way: Way, place: Place, known: bool) -> int:
-        if (way.only_if and not way.only_if(self.centres_given)) or not self.applies(way.when):
+        if not self.allows(way.only_if) or not self.applies(way.when):
             raise LacksError()
         inputs = []
         lacks: list[str] = []
@@ -221,7 +230,7 @@ class Planner:
                 lacks.extend(lack.names)
         if lacks:
             raise LacksError(*lacks, near=bool(inputs))
-        node = self.call(way.function, tuple(inputs))
+        node = self.call(way.function, tuple(inputs), way.slopes)
         if not known:
             used = self.ways_used.setdefault(way.gives, [])
             if (way, place, node) not in used:
@@ -232,7 +241,8 @@ class Planner:
         """Return a constant node: the quantity at its best estimate."""
         key = ("best", place.name)
         if key not in self.keys:
-            self.keys[key] = self.constant(self.nodes[self.resolve(place)].centre)
+            node = self.resolve(place)
+            self.keys[key] = self.append(Node(None, (), self.nodes[node].centre, best_of=node))
         return self.keys[key]
 
     def _sensor(self, place: Place) -> int | None:
@@ -342,7 +352,7 @@ class Planner:
 
     def check(self, check: Check, where: str, moment: Moment = PRESENT) -> PlannedCheck | None:
         """Return the check with the nodes of its parameters, or None where one is lacking."""
-        if check.only_if and not check.only_if(self.centres_given):
+        if not self.allows(check.only_if):
             return None
         inputs = self.inputs(check.function, moment)
         if inputs is None:

@@ -95,18 +95,21 @@ class Draws:
 
         A coefficient is that of the normal scores (Gaussian copula), equal to the ordinary one for normals.
         """
-        values = [self.place(row, estimate) for row, estimate in enumerate(estimates)]
-        if correlation is not None and np.any(correlation - np.eye(len(estimates))):
-            from scipy import special
+        tied = self.tied(correlation)
+        return [tied.place(row, estimate) for row, estimate in enumerate(estimates)]
 
-            tied = np.flatnonzero(np.any(correlation - np.eye(len(estimates)), axis=1))
-            root = correlation_root(correlation[np.ix_(tied, tied)])
-            scores = root @ np.array([self.score(int(row), "normal", math.inf) for row in tied])
-            for row, score in zip(tied, scores, strict=True):
-                estimate = estimates[int(row)]
-                if not estimate.is_exact:
-                    values[int(row)] = estimate.quantile(np.clip(special.ndtr(score), 1e-300, 1 - 2**-53))
-        return values
+    def tied(self, correlation: Floats | None) -> Draws:
+        """Return draws with the coefficients of a matrix over the first rows, see :meth:`place_all`."""
+        if correlation is None or not np.any(correlation - np.eye(len(correlation))):
+            return self
+        from scipy import special
+
+        rows = np.flatnonzero(np.any(correlation - np.eye(len(correlation)), axis=1))
+        root = correlation_root(correlation[np.ix_(rows, rows)])
+        scores = root @ np.array([self.score(int(row), "normal", math.inf) for row in rows])
+        uniform = self.uniform.copy()
+        uniform[rows] = np.clip(special.ndtr(scores), 1e-300, 1 - 2**-53)
+        return Draws(uniform, self.seed)
 
     def shuffled(self, number: int) -> NDArray[np.intp]:
         """Return the ``number``-th random order of the draws, for a second independent set of the same quantities."""

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 
+import GTC
 import numpy as np
 import pytest
 from CoolProp.CoolProp import HAPropsSI, PropsSI
@@ -12,6 +13,7 @@ from hypothesis import strategies as st
 from iapws.humidAir import HumidAir
 
 from envcorr.laws import air, atmosphere
+from tests.scene import cipm_2007
 
 K0 = 273.15
 
@@ -82,6 +84,19 @@ def test_against_iapws(t, p, fraction, expected):
     reference = HumidAir(T=K0 + t, P=p / 1e6, xw=fraction).rho
     ours = air.density_cipm(K0 + t, float(p), fraction, 4e-4)
     assert reference / ours - 1 == pytest.approx(expected, abs=1e-6)
+
+
+def test_slopes():
+    """The derivatives against GTC's, of the formula as typed from the paper (automatic differentiation)."""
+    inputs = {"temperature": K0 + 22.3, "pressure": 97_200.0, "humidity": 0.43, "co2": 6e-4}
+    uncertain = [GTC.ureal(value, 1.0) for value in inputs.values()]
+    whole = cipm_2007(*uncertain, GTC.exp)
+    t, p, h, x = inputs.values()
+    fraction = air.vapour_fraction_from_humidity(t, p, h)
+    by_t, by_p, by_x, by_co2 = air.density_cipm_slopes(t, p, fraction, x)
+    x_t, x_p, x_h = air.vapour_fraction_slopes(t, p, h)
+    for one, slope in zip(uncertain, (by_t + by_x * x_t, by_p + by_x * x_p, by_x * x_h, by_co2), strict=True):
+        assert slope == pytest.approx(GTC.reporting.sensitivity(whole, one), rel=1e-10)
 
 
 def test_saturation_against_iapws95():

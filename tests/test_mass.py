@@ -84,6 +84,61 @@ def test_clause_9_3_of_jcgm_101():
     assert found.conventional_mass.u / MG == pytest.approx(0.0539, abs=6e-5)  # the last half from the draws
 
 
+def test_clause_9_3_of_jcgm_101_by_draws():
+    """JCGM 101:2008, table 8: u 0.0754 mg (exact 0.07548), shortest interval as wide as the symmetric, 0.2991 mg."""
+    found = find_mass(
+        setup(
+            JUST_BEFORE,
+            reading=Estimate(0.100001234, "normal", 0.020 * MG),
+            air_density=about(1.20, 0.10),
+            load_density=about(8000.0, 1000.0),
+            load_density_kind="solid",
+            balance_adjusting_weight_density=about(8000.0, 50.0),
+            balance_adjusting_weight_error=normal(0.0, 0.050 * MG / 0.1),
+        ),
+        count=2**17,
+    ).by_draws["load.conventional_mass"]
+    assert found.u / MG == pytest.approx(0.07548, abs=2e-4)
+    assert (found.high - found.low) / MG == pytest.approx(0.2991, abs=1.5e-3)
+    assert (found.low - 0.1) / MG == pytest.approx(1.0844, abs=1.5e-3)
+    assert not found.agrees  # clause 9.3.2.6: the difference of densities is of second order in the air's own
+
+
+def test_draws_agree_where_all_is_linear():
+    """Two normals: the interval of a normal, mass ± 1.96 u."""
+    said = {"air_density": 1.2, "load_density": normal(1000.0, 1.0), "reading": normal(5e-3, 10 * UG)}
+    found = find_mass(setup(JUST_BEFORE, said), count=2**14)
+    drawn = found.by_draws["load.mass"]
+    assert drawn.agrees
+    assert drawn.u == pytest.approx(found.mass.u, rel=5e-3)
+    assert (drawn.low + drawn.high) / 2 == pytest.approx(found.mass.value, abs=0.02 * found.mass.u)
+    assert (drawn.high - drawn.low) / found.mass.u == pytest.approx(2 * 1.96, rel=0.01)
+
+
+def test_expansion_of_a_given_density():
+    """Water's own: a density found at 20 °C with 207e-6 per K serves at 25 °C as Tanaka's at 25 °C (CRC handbook)."""
+    said = {"air_temperature": K0 + 25.0, "air_pressure": 101_325.0, "air_humidity": 0.5, "reading": 10e-3}
+    warm = mass(**said, load_density=997.05, load_density_kind="liquid")  # 25 °C
+    grown = mass(
+        **said,
+        load_density=998.21,
+        load_density_kind="liquid",
+        load_expansion=2.33e-4,
+        load_density_temperature=K0 + 20,
+    )
+    stiff = mass(**said, load_density=998.21, load_density_kind="liquid")
+    assert grown.volume.value == pytest.approx(warm.volume.value, rel=5e-6)
+    assert stiff.volume.value / warm.volume.value - 1 == pytest.approx(-1.163e-3, rel=0.01)
+    hot = mass(
+        **{**said, "load_warmer_by": 5.0, "air_temperature": K0 + 20.0},
+        load_density=998.21,
+        load_density_kind="liquid",
+        load_expansion=2.33e-4,
+        load_density_temperature=K0 + 20,
+    )
+    assert hot.volume.value == pytest.approx(warm.volume.value, rel=1e-4)  # its own temperature, not the air's
+
+
 @pytest.mark.parametrize(
     ("density", "conventional"),
     # OIML D 28:2004, clause 5, in exact arithmetic: m (1 - 1.2/rho)/(1 - 1.2/8000) of 1 kg

@@ -7,7 +7,6 @@ import os
 import signal
 import subprocess
 import sys
-import time
 
 import numpy as np
 import polars as pl
@@ -20,7 +19,7 @@ from envcorr.intake.setup_file import parse_setup
 from envcorr.intake.table import Column
 from envcorr.jobs.mass import find_mass
 from envcorr.jobs.mass_file import convert
-from envcorr.jobs.mass_table import masses
+from envcorr.jobs.mass_table import DIFFER, RowSolver
 
 AIR = {"temperature": "21.4 °C", "humidity": "42 %", "pressure": "943.10 hPa", "co2": "400 ppm"}
 SETUP = {"air": AIR, "adjusted": {"when": "just before"}}
@@ -33,6 +32,10 @@ A5;2,0;-3;5;gas-displacement;;negative
 A6;2,0;1050;5;bulk;;kind
 A7;3,0;;;solid;;no density
 """
+
+
+def masses(said, columns, words, size, **how):
+    return RowSolver(said, **how).solve(columns, words, size)
 
 
 def setup(**more):
@@ -115,6 +118,71 @@ def test_long_columns_are_what_short_ones_are():
         assert every.u[i] == pytest.approx(one.u[0], rel=1e-12)
 
 
+def test_draws_of_each_row():
+    """Each row's own interval is that of the reading given once, by as many draws of the same seed."""
+    density = np.array([950.0, 32.0])
+    reading = np.array([1e-3, 1.25e-3])
+    columns = {"reading": Column(reading), "load.density": Column(density, np.array([3.0, 3.0]), "normal")}
+    rows = masses(setup(), columns, {}, 2, count=4096)
+    for i in range(2):
+        load = {"density": {"value": f"{density[i]} kg/m³", "u": "3 kg/m³"}}
+        said = {**SETUP, "load": load, "reading": f"{float(reading[i]) * 1e3!r} g"}
+        one = find_mass(parse_setup(said, require=()), count=4096).by_draws["load.mass"]
+        assert [drawn[i] for drawn in rows.drawn] == pytest.approx([one.u, one.low, one.high], rel=1e-12)
+        assert rows.drawn[0][i] == pytest.approx(rows.u[i], rel=0.05)
+    wide = {**columns, "load.density": Column(density, np.array([3.0, 12.0]), "normal")}  # 1/32 ± 12 is skewed
+    assert list(masses(setup(), wide, {}, 2, count=4096).notices[DIFFER]) == [False, True]
+
+
+def test_stated_correlations_count_in_tables():
+    correlation = {"between": ["air.temperature", "air.pressure"], "coefficient": 1.0}
+    air = {
+        **AIR,
+        "temperature": {"value": "21.4 °C", "u": "0.5 K"},
+        "pressure": {"value": "943.1 hPa", "u": "1 hPa"},
+    }
+    columns = {"reading": Column(np.array([5e-3])), "load.density": Column(np.array([100.0]))}
+    free, tied = (masses(setup(air=air, **more), columns, {}, 1) for more in ({}, {"correlation": [correlation]}))
+    said = {**SETUP, "air": air, "load": {"density": "100 kg/m³"}, "reading": "5 g", "correlation": [correlation]}
+    assert tied.u[0] == pytest.approx(find_mass(parse_setup(said, require=())).mass.u, rel=1e-9)
+    assert tied.u[0] < 0.6 * free.u[0]  # warmer and higher: -1.9e-3 and +1.1e-3 of the density offset each other
+    drawn = masses(setup(air=air, correlation=[correlation]), columns, {}, 1, count=4096).drawn
+    assert drawn[0][0] == pytest.approx(tied.u[0], rel=0.03)
+
+
+def test_materials_and_what_is_told_beside(tmp_path):
+    """Water at each row's temperature: 998.2067 and 997.0470 kg/m³ air-free (Tanaka 2001), 2.5 and 2.0 g/m³ less."""
+    text = "reading [g],load.material,air.temperature [°C]\n10,water,20\n10,water,25\n10,unobtainium,20\n10,,20\n"
+    path = write(tmp_path, text)
+    summary = convert(path, tmp_path / "out.csv", setup(), beside=["conventional mass", "volume"])
+    found = pl.read_csv(tmp_path / "out.csv")
+    assert summary.failed == 2
+    air = found["density of the air [kg/m³]"][0]
+    assert found["volume [mL]"][0] == pytest.approx(10 * (1 - air / 8000) / (0.9982042 - air / 1000), rel=2e-6)
+    assert (found["mass [g]"] / found["volume [mL]"]).to_list()[:2] == pytest.approx([0.9982042, 0.9970450], rel=1e-7)
+    ratio = found["conventional mass [g]"][0] / found["mass [g]"][0]
+    assert ratio == pytest.approx((1 - 1.2 / 998.2042) / (1 - 1.2 / 8000), rel=1e-9)  # OIML D 28:2004, clause 5
+    assert found["standard uncertainty of the volume [mL]"][0] > 0
+    assert "unobtainium" in found["notices"][2]
+    assert "lacks" in found["notices"][3]
+
+
+def test_the_order_of_rows_does_not_matter():
+    """A kind of row is planned once for the table; what only some of its rows have is not lost on the others."""
+    fraction = np.array([0.0, 0.1])
+    columns = {
+        "reading": Column(np.array([1.25e-3, 1.25e-3])),
+        "load.density": Column(np.array([32.0, 32.0])),
+        "load.open_cell_fraction": Column(fraction),
+    }
+    said = setup(load={"density_kind": "envelope", "solid_density": "1050 kg/m³"})
+    both = masses(said, columns, {}, 2)
+    solver = RowSolver(said)
+    for i in (0, 1):  # block after block: the first one has no open cells, the next has
+        one = solver.solve({name: Column(c.values[i : i + 1]) for name, c in columns.items()}, {}, 1)
+        assert one.mass[0] == both.mass[i]
+
+
 def test_columns_are_mapped(tmp_path):
     path = write(tmp_path, "Mass (g),rho\n1.25,1050\n")
     with pytest.raises(InputError, match="no reading was found"):
@@ -181,21 +249,19 @@ def test_an_existing_file_is_kept_unless_forced(tmp_path, foam):
 
 def test_killed_in_mid_write_leaves_no_answer(tmp_path):
     """A process killed while it computes: no file of the answer's name, and the input as it was."""
-    rows = "\n".join(f"{1 + i % 7 / 10:.1f},{900 + i % 400}" for i in range(1_500_000))
+    rows = "\n".join(f"{1 + i % 7 / 10:.1f},{900 + i % 400}" for i in range(400_000))
     path = write(tmp_path, f"reading [g],load.density [kg/m³]\n{rows}\n")
     before = path.stat().st_size
     code = (
-        "import pathlib; from envcorr.jobs.mass_file import convert; from tests.test_mass_table import setup;"
-        f"print('on', flush=True); folder = pathlib.Path({str(tmp_path)!r});"
-        "convert(folder / 'in.csv', folder / 'out.csv', setup())"
+        "import os, pathlib, signal; from envcorr.jobs.mass_file import convert;"
+        "from tests.test_mass_table import setup;"
+        f"folder = pathlib.Path({str(tmp_path)!r});"
+        "kill = lambda done, total: done > 200_000 and os.kill(os.getpid(), signal.SIGKILL);"
+        "convert(folder / 'in.csv', folder / 'out.csv', setup(), progress=kill)"
     )
-    process = subprocess.Popen([sys.executable, "-c", code], stdout=subprocess.PIPE, cwd=os.getcwd())
-    assert process.stdout is not None
-    process.stdout.readline()
-    time.sleep(0.8)
-    process.send_signal(signal.SIGKILL)
-    process.wait()
-    process.stdout.close()
+    done = subprocess.run([sys.executable, "-c", code], cwd=os.getcwd(), check=False)
+    assert done.returncode == -signal.SIGKILL
+    assert any(path.name.endswith(".part") for path in tmp_path.iterdir())  # it was writing
     assert not (tmp_path / "out.csv").exists()
     assert path.stat().st_size == before
 

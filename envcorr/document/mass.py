@@ -38,6 +38,13 @@ def document(result: MassResult) -> list[Block]:
     figures += _beside("Conventional mass", result.conventional_mass, "mass", unit)
     figures += _beside("Volume that displaces air", result.volume, "volume", "mL")
     figures += _beside("Air density", result.air_density, "density", "kg/m³")
+    for name, one in result.by_draws.items():
+        low, high = (with_u(end, one.u, "mass", unit)[0].removesuffix(f" {unit}") for end in (one.low, one.high))
+        verdict = "first order agrees" if one.agrees else "first order does not agree: take this interval"
+        label = "Mass by draws" if name == "load.mass" else "Conventional mass by draws"
+        figures.append(
+            Figure(label, f"{low} to {high} {unit}", f"u {with_u(one.u, one.u, 'mass', small)[0]}, {verdict}")
+        )
     seen = [row for row in result.effects if row.u or row.correction]
     return [
         Heading(result.setup.title or "Mass of the sample", level=1),

@@ -28,8 +28,6 @@ __all__ = ["REQUIRED", "parse_setup", "place_of", "read_setup"]
 
 REQUIRED = {"target.resolution": '[target] resolution = "0.1 mg"', "load.mass": '[load] mass = "5 g"'}
 """What a room check cannot do without, and how to write it."""
-MATERIALS = ("load.material", "container.material")
-"""Entries that name a material, whose density they give."""
 _HUMIDITIES = ("humidity", "dew_point", "wet_bulb")
 _HEADS = [f"{moment}{sensor}" for moment in ("tare.", "adjusted.", "") for sensor in ("sensors.", "")]
 _YES_NO = {True: "yes", False: "no"}
@@ -113,7 +111,7 @@ class _Reader:
         if name == "target.waived":
             self._waived(raw)
             return
-        if name in MATERIALS:
+        if name in materials.NAMED_BY:
             self.materials[name] = raw
             return
         name = _full_name(name)
@@ -201,7 +199,7 @@ class _Reader:
     def _material(self, name: str, raw: Any) -> None:
         """Put a material's density in the place of a given one, at the air's temperature."""
         section = name.partition(".")[0]
-        given = [f"{section}.density"] + (["load.volume"] if section == "load" else [])
+        given = [f"{section}.density"] + (["load.volume", "load.expansion"] if section == "load" else [])
         beside = [one for one in given if one in self.estimates]
         if beside:
             self.fault(name, f"is given beside {' and '.join(beside)}.", "Keep one.")
@@ -215,8 +213,7 @@ class _Reader:
             self.faults.extend(Fault(name, fault.problem, fault.remedy) for fault in error.faults)
             return
         air = self.estimates.get("air.temperature")
-        at = float(air.centre) if air else materials.REFERENCE_TEMPERATURE
-        self.estimates[f"{section}.density"] = materials.density(material, at)
+        self.estimates |= materials.entries(name, material, float(air.centre) if air else None)
         self.written[name] = f"{material.name} ({material.source})"
         if section == "load":
             self.choices.setdefault("load.density_kind", material.kind)

@@ -1,7 +1,8 @@
 """Tables of readings: which column is which quantity, in which unit, and its cells as numbers.
 
 A header is a quantity's name with its unit, ``reading [g]`` or ``air.humidity (%)``; with ``.u`` or ``.half_width``
-behind the name it is that row's own spread. A choice's name stands alone. Everything else passes through untouched.
+behind the name it is that row's own spread. A choice's name, and ``load.material``, stand alone. Everything else
+passes through untouched.
 """
 
 from __future__ import annotations
@@ -16,7 +17,7 @@ from typing import TYPE_CHECKING, Any, TypeAlias
 import numpy as np
 from numpy.typing import NDArray
 
-from envcorr import units
+from envcorr import materials, units
 from envcorr.catalogue import CATALOGUE, nearest
 from envcorr.errors import Fault, InputError
 from envcorr.estimate import Shape
@@ -25,7 +26,7 @@ from envcorr.numerals import UnitError, quoted
 if TYPE_CHECKING:
     import polars as pl
 
-__all__ = ["FORMATS", "MOST_COLUMNS", "Column", "Field", "Layout", "layout_of", "read_columns", "scan"]
+__all__ = ["FORMATS", "MOST_COLUMNS", "Column", "Field", "Layout", "Source", "layout_of", "read_columns", "scan"]
 
 FORMATS = (".csv", ".tsv", ".txt", ".xlsx", ".parquet")
 MOST_COLUMNS = 1000
@@ -77,8 +78,21 @@ class Layout:
         return tuple(one for one in self.fields if not one.kind)
 
 
-def scan(path: Path) -> tuple[pl.LazyFrame, str]:
-    """Return the table as a lazy frame, texts as they stand, and the separator of a CSV (else "").
+@dataclass(frozen=True, slots=True)
+class Source:
+    """A table as a lazy frame, texts as they stand; ``separator`` is that of a CSV (else "").
+
+    ``commas``: whether there may be commas inside its cells.
+    """
+
+    frame: pl.LazyFrame
+    headers: tuple[str, ...]
+    separator: str = ""
+    commas: bool = True
+
+
+def scan(path: Path) -> Source:
+    """Return the table of a file.
 
     Raises :class:`InputError` where it is none.
     """
@@ -92,17 +106,17 @@ def scan(path: Path) -> tuple[pl.LazyFrame, str]:
         raise _fault(name, "is a folder.", "Name the table in it.")
     if not path.exists():
         raise _fault(name, "is not there.", "Check the name and the folder.")
+    separator, commas = "", True
     try:
         if suffix == ".parquet":
             frame = pl.scan_parquet(path)
             headers = frame.collect_schema().names()
-            separator = ""
         elif suffix == ".xlsx":
             frame = pl.read_excel(path, infer_schema_length=None).lazy()
             headers = frame.collect_schema().names()
-            separator = ""
         else:
             headers, separator = _csv_headers(path)
+            commas = _contains(path, b'"' if separator == "," else b",")
             frame = pl.scan_csv(path, separator=separator, infer_schema=False, quote_char='"')
     except InputError:
         raise
@@ -116,7 +130,12 @@ def scan(path: Path) -> tuple[pl.LazyFrame, str]:
         raise _fault(name, f"has the header {quoted(twice[0])} twice.", "Give every column a name of its own.")
     if len(headers) > MOST_COLUMNS:
         raise _fault(name, f"has {len(headers)} columns.", f"At most {MOST_COLUMNS} are read; is this another file?")
-    return frame, separator
+    return Source(frame, tuple(headers), separator, commas)
+
+
+def _contains(path: Path, mark: bytes) -> bool:
+    with path.open("rb") as file:
+        return any(mark in piece for piece in iter(lambda: file.read(2**20), b""))
 
 
 def _csv_headers(path: Path) -> tuple[list[str], str]:
@@ -137,12 +156,13 @@ def _csv_headers(path: Path) -> tuple[list[str], str]:
     return next(csv.reader([first], delimiter=separator)), separator
 
 
-def layout_of(frame: pl.LazyFrame, headers: Sequence[str], mapped: Sequence[str] = ()) -> Layout:
+def layout_of(source: Source, mapped: Sequence[str] = ()) -> Layout:
     """Return which column is which, from the headers and from ``mapped`` texts like ``reading=Mass (g)``.
 
     Raises :class:`InputError` where there is no reading, a name or a unit is not known, or decimal marks are mixed.
     """
     faults: list[Fault] = []
+    headers = source.headers
     given = _mapping(mapped, headers, faults)
     fields: list[Field] = []
     for header in headers:
@@ -174,7 +194,8 @@ def layout_of(frame: pl.LazyFrame, headers: Sequence[str], mapped: Sequence[str]
     if faults:
         raise InputError(faults, what="the table")
     unit = values["reading" if "reading" in values else "gross"].unit
-    return Layout(tuple(fields), tuple(headers), unit, _decimal_comma(frame, [f for f in fields if f.kind]))
+    comma = source.commas and _decimal_comma(source.frame, [f for f in fields if f.kind])
+    return Layout(tuple(fields), headers, unit, comma)
 
 
 def _mapping(mapped: Sequence[str], headers: Sequence[str], faults: list[Fault]) -> dict[str, str]:
@@ -202,7 +223,7 @@ def _field(header: str, given: str | None) -> Field | None:
             name, spread = name.removesuffix(ending), shape
     if name.endswith(".U"):
         raise InputError([Fault("", "U does not say its k.", "Give .u, the standard uncertainty U/k.")])
-    if name in CATALOGUE.choices:
+    if name in CATALOGUE.choices or name in materials.NAMED_BY:
         return Field(header, name)
     place = CATALOGUE.find(name)
     if place is None or place.quantity.internal:
@@ -257,6 +278,8 @@ def read_columns(batch: pl.DataFrame, layout: Layout) -> tuple[dict[str, Column]
     words = {}
     for field in layout.choices:
         words[field.name] = [_word(text) for text in batch[field.header].to_list()]
+        if field.name in materials.NAMED_BY:
+            continue  # found, or not, when the rows are solved
         options = CATALOGUE.choices[field.name]
         for i, word in enumerate(words[field.name]):
             if word and word not in options.options:
@@ -273,22 +296,16 @@ def _numbers(column: pl.Series, comma: bool) -> tuple[Floats, list[int]]:
     """Return the numbers of a column, NaN where a cell is empty, and the rows whose text is no number."""
     import polars as pl
 
-    if column.dtype != pl.String:
-        numbers = column.cast(pl.Float64, strict=False).fill_null(float("nan")).to_numpy()
-        bad = (
-            np.isnan(numbers)
-            & ~column.is_null().to_numpy()
-            & ~column.cast(pl.Float64, strict=False).is_nan().fill_null(True).to_numpy()
-        )
-        return numbers.copy(), [int(i) for i in np.flatnonzero(bad | np.isinf(numbers))]
-    text = column.fill_null("").str.strip_chars().str.replace("−", "-", literal=True)
-    if comma:
-        text = text.str.replace(",", ".", literal=True)
+    text = column.str.replace(",", ".", literal=True) if comma and column.dtype == pl.String else column
     cast = text.cast(pl.Float64, strict=False)
-    empty = (text == "").to_numpy()
-    numbers = cast.fill_null(float("nan")).to_numpy().copy()
-    bad = (~empty & np.isnan(numbers)) | np.isinf(numbers)
-    return numbers, [int(i) for i in np.flatnonzero(bad)]
+    if column.dtype == pl.String and cast.null_count() > column.null_count():  # blanks, another minus, or no number
+        text = text.str.strip_chars().str.replace("−", "-", literal=True)
+        cast = text.cast(pl.Float64, strict=False)
+        empty = (text.fill_null("") == "").to_numpy()
+    else:
+        empty = column.is_null().to_numpy() if column.null_count() else np.zeros(len(column), dtype=bool)
+    numbers = np.array(cast.to_numpy(), dtype=np.float64)
+    return numbers, [int(i) for i in np.flatnonzero(~empty & ~np.isfinite(numbers))]
 
 
 def _fault(where: str, problem: str, remedy: str) -> InputError:

@@ -8,8 +8,8 @@ u.
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
-from dataclasses import dataclass
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
 from typing import Any
 
 import numpy as np
@@ -17,12 +17,13 @@ import numpy as np
 from envcorr.errors import Notice
 from envcorr.estimate import Estimate, Value
 from envcorr.jobs.common import Contribution, correlation_matrix, notices, usual_range_notices
+from envcorr.jobs.mass_draws import apart, masses_by_draws
 from envcorr.jobs.solving import Solution, bands_by_draws, correctable, plan_reading, reading_of, solve
 from envcorr.plan import Assumption, NotAssessed, Plan
 from envcorr.propagation import coverage_factor
 from envcorr.setup import Setup
 
-__all__ = ["MassEffect", "MassResult", "Told", "find_mass"]
+__all__ = ["DrawnMass", "MassEffect", "MassResult", "Told", "find_mass"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,6 +48,20 @@ class Told:
     u: float
 
 
+@dataclass(frozen=True, slots=True)
+class DrawnMass:
+    """Standard uncertainty and coverage interval by ``size`` draws; ``agrees`` where first order is validated by them.
+
+    JCGM 101:2008, 7.7 and clause 8, to the first significant digit of u.
+    """
+
+    u: float
+    low: float
+    high: float
+    size: int
+    agrees: bool
+
+
 @dataclass(frozen=True)
 class MassResult:
     """The mass of one sample [kg], and what goes with it."""
@@ -69,6 +84,8 @@ class MassResult:
     unused: tuple[str, ...]
     notices: tuple[Notice, ...]
     seed: int
+    by_draws: Mapping[str, DrawnMass] = field(default_factory=dict)
+    """What Monte Carlo says of ``load.mass`` and ``load.conventional_mass``, where it was asked for."""
 
     @property
     def expanded(self) -> float:
@@ -76,10 +93,11 @@ class MassResult:
         return self.k * self.mass.u
 
 
-def find_mass(setup: Setup, *, probability: float = 0.95, seed: int = 0) -> MassResult:
+def find_mass(setup: Setup, *, probability: float = 0.95, count: int = 0, seed: int = 0) -> MassResult:
     """Return the mass behind ``reading`` (or ``gross`` less ``tare``) of the set-up.
 
     First order with effective degrees of freedom (JCGM 100:2008, clause 5 and annex G); the bands by Monte Carlo.
+    ``count`` draws give a coverage interval by Monte Carlo too (none if 0).
     Raises :class:`InputError` where there is no reading, or nothing by which to correct it for the air.
     """
     reading = reading_of(setup)
@@ -103,16 +121,28 @@ def find_mass(setup: Setup, *, probability: float = 0.95, seed: int = 0) -> Mass
         rest = widening * (float(value) / mass) ** 2 if with_mass and mass else 0.0
         return Told(float(value), math.sqrt(_square(contributions, correlation) + rest))
 
+    k = coverage_factor(probability, dof)
+    conventional = told("load.conventional_mass", with_mass=True)
+    sizes = {"load.mass": Told(mass, u)} | ({"load.conventional_mass": conventional} if conventional else {})
+    drawn = {}
+    if count:
+        how: dict[str, Any] = {"count": count, "probability": probability, "seed": seed, "names": tuple(sizes)}
+        for name, found in masses_by_draws(plan, solved, reading, 1, **how).items():
+            one = sizes[name]
+            agrees = not apart(one.value, k * one.u, found)[0]
+            drawn[name] = DrawnMass(
+                float(found.u[0]), float(found.low[0]), float(found.high[0]), found.size, bool(agrees)
+            )
     return MassResult(
         setup=setup,
         plan=plan,
         reading=Told(float(reading.centre), float(reading.u)),
         mass=Told(mass, u),
         dof=dof,
-        k=coverage_factor(probability, dof),
+        k=k,
         probability=probability,
         correction=mass - float(reading.centre),
-        conventional_mass=told("load.conventional_mass", with_mass=True),
+        conventional_mass=conventional,
         volume=told("load.volume", with_mass="load.volume" not in setup.estimates),
         air_density=told("air.density", with_mass=False),
         quantities=_quantity_rows(plan, solved, reading, own),
@@ -122,6 +152,7 @@ def find_mass(setup: Setup, *, probability: float = 0.95, seed: int = 0) -> Mass
         unused=tuple(name for name in plan.unused if name not in ("reading", "gross", "tare")),
         notices=(*usual_range_notices(plan), *notices(plan, solved.values)),
         seed=seed,
+        by_draws=drawn,
     )
 
 

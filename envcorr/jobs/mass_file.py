@@ -3,18 +3,19 @@
 from __future__ import annotations
 
 import os
-import threading
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from envcorr import units
+from envcorr.catalogue import CATALOGUE
 from envcorr.errors import Fault, InputError
 from envcorr.intake.table import FORMATS, Layout, layout_of, read_columns, scan
-from envcorr.jobs.mass_table import BLOCK, masses
+from envcorr.jobs.mass_table import BESIDE, BLOCK, Rows, RowSolver
 from envcorr.numerals import quoted
 from envcorr.propagation import coverage_factor
 from envcorr.setup import Setup
@@ -26,6 +27,9 @@ __all__ = ["TableSummary", "added_headers", "convert"]
 
 MOST_XLSX_ROWS = 1_048_575
 """Rows of a sheet less the headers (ECMA-376)."""
+FEW_WHERE_DRAWN = 1024
+"""Rows at a time where each is drawn, so that the progress shows."""
+_KINDS = {name: CATALOGUE.quantities[quantity].kind for name, quantity in BESIDE.items()}
 
 
 @dataclass
@@ -45,16 +49,21 @@ class TableSummary:
     probability: float = 0.95
 
 
-def added_headers(unit: str) -> tuple[str, ...]:
-    """Return the headers of the columns that are added."""
-    return (
+def added_headers(unit: str, beside: Sequence[str] = (), *, drawn: bool = False) -> tuple[str, ...]:
+    """Return the headers of the columns that are added; the last one holds text."""
+    headers = [
         f"mass [{unit}]",
         f"standard uncertainty [{unit}]",
         f"expanded uncertainty [{unit}]",
         f"correction [{unit}]",
         "density of the air [kg/m³]",
-        "notices",
-    )
+    ]
+    for name in beside:
+        own = unit if _KINDS[name] == "mass" else "mL"
+        headers += [f"{name} [{own}]", f"standard uncertainty of the {name} [{own}]"]
+    if drawn:
+        headers += [f"standard uncertainty by draws [{unit}]", f"interval from [{unit}]", f"interval to [{unit}]"]
+    return (*headers, "notices")
 
 
 def convert(
@@ -65,24 +74,27 @@ def convert(
     mapped: Sequence[str] = (),
     force: bool = False,
     probability: float = 0.95,
+    beside: Sequence[str] = (),
+    count: int = 0,
     seed: int = 0,
     progress: Callable[[int, int], None] | None = None,
 ) -> TableSummary:
     """Write ``source`` with the masses of its readings added to ``target``; CSV, XLSX or Parquet by their endings.
 
     The target appears whole or not at all, and never replaces the source; an existing one needs ``force``. Rows that
-    cannot be computed are kept, marked and counted. ``progress`` is told the rows done and in all. Raises
-    :class:`InputError` where the table or the target cannot be used.
+    cannot be computed are kept, marked and counted. ``beside`` names what to tell beside the mass ("conventional mass",
+    "volume"); ``count`` draws a row give a coverage interval by Monte Carlo too (none if 0). ``progress`` is told the
+    rows done and in all. Raises :class:`InputError` where the table or the target cannot be used.
     """
     import polars as pl
+    from polars.io.plugins import register_io_source
 
     _check_target(source, target, force)
-    frame, separator = scan(source)
-    headers = frame.collect_schema().names()
-    layout = layout_of(frame, headers, mapped)
-    added = added_headers(layout.reading_unit)
+    table = scan(source)
+    frame, layout = table.frame, layout_of(table, mapped)
+    added = added_headers(layout.reading_unit, beside, drawn=count > 0)
     for header in added:
-        if header in headers:
+        if header in table.headers:
             fault = Fault(
                 "the table", f"already has a column {quoted(header)}.", "Rename it: the answer needs the name."
             )
@@ -92,19 +104,21 @@ def convert(
         raise InputError([Fault("the table", "has headers and no rows.", "Add a line a reading.")])
     summary = TableSummary(str(source), str(target), layout, k=coverage_factor(probability, float("inf")))
     summary.probability = probability
-    lock = threading.Lock()
+    solver = RowSolver(setup, beside=beside, count=count, probability=probability, seed=seed)
+    block = max(1, min(BLOCK, FEW_WHERE_DRAWN)) if count else BLOCK
 
-    def answer(batch: pl.DataFrame) -> pl.DataFrame:
-        pieces = [_answer(piece, layout, setup, added, summary, lock, seed) for piece in batch.iter_slices(BLOCK)]
-        if progress is not None:
-            progress(summary.rows, total)
-        return pl.concat(pieces) if pieces else _answer(batch, layout, setup, added, summary, lock, seed)
+    def blocks(*_: Any) -> Iterator[pl.DataFrame]:
+        # in order and of one size, so that the same table gives the same bytes
+        for batch in frame.collect_batches(chunk_size=block, maintain_order=True):
+            yield _answer(batch, layout, solver, added, summary)
+            if progress is not None:
+                progress(summary.rows, total)
 
     schema = dict(frame.collect_schema()) | dict.fromkeys(added[:-1], pl.Float64()) | {added[-1]: pl.String()}
-    answered = frame.map_batches(answer, schema=schema, streamable=True)
+    answered = register_io_source(blocks, schema=schema, is_pure=True)
     part = target.with_name(f".{target.name}.{os.getpid()}.part")
     try:
-        _write(answered, part, target.suffix.lower(), separator or ",", layout.comma, total)
+        _write(answered, part, target.suffix.lower(), table.separator or ",", layout.comma, total)
         os.replace(part, target)
     except OSError as error:
         reason = error.strerror or str(error)
@@ -131,49 +145,58 @@ def _check_target(source: Path, target: Path, force: bool) -> None:
 
 
 def _answer(
-    batch: pl.DataFrame,
-    layout: Layout,
-    setup: Setup,
-    added: Sequence[str],
-    summary: TableSummary,
-    lock: Any,
-    seed: int,
+    batch: pl.DataFrame, layout: Layout, solver: RowSolver, added: Sequence[str], summary: TableSummary
 ) -> pl.DataFrame:
     """Return a batch of rows with the columns of the answer, and count what became of them."""
     import polars as pl
 
     columns, words, faults = read_columns(batch, layout)
-    readable = faults == ""
+    unreadable = np.flatnonzero(faults)
     for column in columns.values():
-        column.values[~readable] = np.nan
-    found = masses(setup, columns, words, batch.height, seed=seed)
-    sentences = np.where(readable, found.faults, faults)
-    failed = (sentences != "") | np.isnan(found.mass)
-    sentences[failed & (sentences == "")] = "the reading is missing."
-    unit = layout.reading_unit
-    numbers = []
-    for values in (found.mass, found.u, summary.k * found.u, found.correction):
-        size = np.asarray(units.to_unit(values, "mass", unit), dtype=np.float64)
-        numbers.append(np.where(failed, np.nan, size))
-    numbers.append(np.where(failed, np.nan, found.air_density))
-    notes = np.where(failed, np.char.add("not computed: ", sentences.astype(str)), "").astype(object)
-    with lock:
-        summary.rows += batch.height
-        summary.failed += int(np.count_nonzero(failed))
-        for sentence in sentences[failed]:
-            kind = sentence if len(summary.faults) < 20 or sentence in summary.faults else "other reasons"
-            summary.faults[kind] = summary.faults.get(kind, 0) + 1
-        for sentence, concerned in found.notices.items():
-            mask = concerned & ~failed
-            if np.any(mask):
-                summary.notices[sentence] = summary.notices.get(sentence, 0) + int(np.count_nonzero(mask))
-                notes[mask] = [f"{note} {sentence}".strip() for note in notes[mask]]
-        summary.assumed.update(found.assumed)
-    new = [
-        pl.Series(header, values, dtype=pl.Float64).fill_nan(None)
-        for header, values in zip(added, numbers, strict=False)
+        column.values[unreadable] = np.nan
+    found = solver.solve(columns, words, batch.height)
+    found.faults[unreadable] = faults[unreadable]
+    failed = np.isnan(found.mass)
+    numbers = [
+        pl.Series(values, dtype=pl.Float64, nan_to_null=True) for values in _numbers(found, layout, summary, failed)
     ]
-    return batch.with_columns(*new, pl.Series(added[-1], [note or None for note in notes], dtype=pl.String))
+    notes = pl.Series(_notes(found, failed, summary), dtype=pl.String)
+    summary.rows += batch.height
+    summary.assumed.update(found.assumed)
+    return batch.with_columns(*(series.alias(header) for header, series in zip(added, [*numbers, notes], strict=True)))
+
+
+def _numbers(found: Rows, layout: Layout, summary: TableSummary, failed: NDArray[np.bool_]) -> list[Any]:
+    """Return the numbers of the answer in the table's units, in the order of :func:`added_headers`."""
+
+    def in_unit(values: Any, kind: str = "mass") -> Any:
+        size = np.asarray(units.to_unit(values, kind, layout.reading_unit if kind == "mass" else "mL"), dtype=float)
+        return np.where(failed, np.nan, size)
+
+    numbers = [in_unit(values) for values in (found.mass, found.u, summary.k * found.u, found.correction)]
+    numbers.append(np.where(failed, np.nan, found.air_density))
+    for name, both in found.beside.items():
+        numbers += [in_unit(values, _KINDS[name]) for values in both]
+    numbers += [in_unit(values) for values in found.drawn or ()]
+    return numbers
+
+
+def _notes(found: Rows, failed: NDArray[np.bool_], summary: TableSummary) -> list[str | None]:
+    """Return a sentence or none for each row, and count them."""
+    notes: list[str | None] = [None] * failed.size
+    for i in np.flatnonzero(failed):
+        sentence = found.faults[i] or "the reading is missing."
+        notes[i] = f"not computed: {sentence}"
+        summary.failed += 1
+        kind = sentence if len(summary.faults) < 20 or sentence in summary.faults else "other reasons"
+        summary.faults[kind] = summary.faults.get(kind, 0) + 1
+    for sentence, concerned in found.notices.items():
+        rows = np.flatnonzero(concerned & ~failed)
+        if rows.size:
+            summary.notices[sentence] = summary.notices.get(sentence, 0) + rows.size
+            for i in rows:
+                notes[i] = f"{notes[i]} {sentence}" if notes[i] else sentence
+    return notes
 
 
 def _write(answered: pl.LazyFrame, part: Path, suffix: str, separator: str, comma: bool, total: int) -> None:

@@ -1,7 +1,8 @@
 """The masses behind a table of readings: the same expression as for one reading, on columns.
 
-Rows that differ in a choice, or in which of their cells are filled, are planned apart. What cannot be corrected widens
-u by first order where that agrees with draws at a representative row, else by draws of each row.
+Rows that differ in a choice, or in which of their cells are filled, are of different kinds and planned apart. What
+cannot be corrected widens u by first order where that agrees with draws at the first row of the kind, else by draws of
+each row.
 """
 
 from __future__ import annotations
@@ -14,11 +15,13 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from envcorr import units
+from envcorr import materials, units
 from envcorr.catalogue import CATALOGUE
-from envcorr.errors import InputError
+from envcorr.errors import Fault, InputError
 from envcorr.estimate import Estimate, Value
 from envcorr.intake.table import Column
+from envcorr.jobs.common import correlation_matrix
+from envcorr.jobs.mass_draws import apart, drawn_rows, lessened, masses_by_draws
 from envcorr.jobs.solving import (
     ALIKE,
     Solution,
@@ -30,16 +33,18 @@ from envcorr.jobs.solving import (
     solve,
 )
 from envcorr.plan import Plan
-from envcorr.propagation import BATCH, draws
+from envcorr.propagation import BATCH, coverage_factor, draws
 from envcorr.setup import Setup
 
-__all__ = ["BLOCK", "Rows", "masses"]
+__all__ = ["BESIDE", "BLOCK", "DIFFER", "RowSolver", "Rows"]
 
-BLOCK = 32_768
-"""Rows that are planned and solved at a time: their columns stay in the cache."""
+BLOCK = 16_384
+"""Rows that are solved at a time: their columns stay in the cache."""
+BESIDE = {"conventional mass": "load.conventional_mass", "volume": "load.volume"}
+"""What can be told of each row beside the mass, where it is asked for."""
+DIFFER = "First order and draws disagree (JCGM 101:2008, clause 8): take the coverage interval by draws."
 ROW_DRAWS = 256
 """Draws of each row for a band that first order does not see."""
-_AT_A_TIME = 2_048  # rows of those
 
 Floats = NDArray[np.float64]
 
@@ -48,7 +53,9 @@ Floats = NDArray[np.float64]
 class Rows:
     """What was found, one a row [SI]; NaN and a sentence in ``faults`` where a row could not be computed.
 
-    ``notices`` maps a sentence to the rows (a mask) that it concerns; ``assumed`` is what was taken in any of them.
+    ``beside`` holds value and standard uncertainty of what was asked for beside the mass; ``drawn`` the standard
+    uncertainty and the coverage interval by draws, where those were. ``notices`` maps a sentence to the rows (a mask)
+    that it concerns; ``assumed`` is what was taken in any of them.
     """
 
     mass: Floats
@@ -56,30 +63,154 @@ class Rows:
     correction: Floats
     air_density: Floats
     faults: NDArray[np.object_]
+    beside: dict[str, tuple[Floats, Floats]] = field(default_factory=dict)
+    drawn: tuple[Floats, Floats, Floats] | None = None
     notices: dict[str, NDArray[np.bool_]] = field(default_factory=dict)
     assumed: dict[str, Any] = field(default_factory=dict)
 
-    @classmethod
-    def empty(cls, size: int) -> Rows:
-        """Return rows that are not computed yet."""
-        mass, u, correction, air_density = (np.full(size, np.nan) for _ in range(4))
-        return cls(mass, u, correction, air_density, np.full(size, "", dtype=object))
+
+@dataclass(frozen=True, slots=True)
+class _Kind:
+    """What rows of one kind share: their plan, and how each band is taken (see :func:`_sort_bands`)."""
+
+    plan: Plan
+    linear: Sequence[int]
+    steady: Mapping[int, float]
+    rest: Sequence[int]
 
 
-def masses(
-    setup: Setup, columns: Mapping[str, Column], choices: Mapping[str, Sequence[str]], size: int, *, seed: int = 0
-) -> Rows:
-    """Return the masses of ``size`` rows: what the columns hold, and for the rest what the set-up says.
+class RowSolver:
+    """Solves the rows of one table, block by block and in order; what it found for a kind of row serves again.
 
-    A row with a value outside what physics allows, or without what it needs, is marked and explained.
+    ``beside`` names what is wanted beside the mass (keys of :data:`BESIDE`); ``count`` draws a row, 0 for none.
     """
-    rows = Rows.empty(size)
-    usable = np.ones(size, dtype=bool)
-    for name, column in columns.items():
-        usable &= _inside(name, column, rows)
-    for members in _groups(columns, choices, usable):
-        _solve_group(setup, columns, choices, members, rows, seed)
-    return rows
+
+    def __init__(
+        self,
+        setup: Setup,
+        *,
+        beside: Sequence[str] = (),
+        count: int = 0,
+        probability: float = 0.95,
+        seed: int = 0,
+    ) -> None:
+        self.setup, self.beside = setup, tuple(beside)
+        self.count, self.probability, self.seed = count, probability, seed
+        self.kinds: dict[Any, _Kind] = {}
+
+    def solve(self, columns: Mapping[str, Column], words: Mapping[str, Sequence[str]], size: int) -> Rows:
+        """Return the masses of ``size`` rows: what the columns hold, and for the rest what the set-up says.
+
+        A row with a value outside what physics allows, or without what it needs, is marked and explained.
+        """
+        rows = self._empty(size)
+        usable = np.ones(size, dtype=bool)
+        for name, column in columns.items():
+            usable &= _inside(name, column, rows)
+        for kind, members in _groups(columns, words, usable):
+            self._solve_kind(kind, columns, words, members, rows)
+        return rows
+
+    def _empty(self, size: int) -> Rows:
+        def column() -> Floats:
+            return np.full(size, np.nan)
+
+        return Rows(
+            column(),
+            column(),
+            column(),
+            column(),
+            np.full(size, "", dtype=object),
+            {name: (column(), column()) for name in self.beside},
+            (column(), column(), column()) if self.count else None,
+        )
+
+    def _solve_kind(
+        self,
+        kind: Any,
+        columns: Mapping[str, Column],
+        words: Mapping[str, Sequence[str]],
+        members: NDArray[np.intp],
+        rows: Rows,
+    ) -> None:
+        try:
+            whole = _setup_of(self.setup, columns, words, members)
+            reading = reading_of(whole)
+            if kind not in self.kinds:
+                first = _setup_of(self.setup, columns, words, members[:1])
+                self.kinds[kind] = _kind(first, self.seed)
+            alike = self.kinds[kind]
+            plan = plan_reading(whole, reading.centre, alike.plan)
+        except InputError as error:
+            rows.faults[members] = "; ".join(str(fault) for fault in error.faults)
+            return
+        size = members.size
+
+        def column(value: Value) -> Floats:
+            return np.broadcast_to(np.asarray(value, dtype=np.float64), (size,))
+
+        solved = solve(plan, column(reading.centre), by_effect=bool(self.beside), bands=alike.linear)
+        matrix = correlation_matrix(plan)
+        widening = _widening(plan, solved, alike, size, self.seed) + np.square(column(reading.u * solved.per))
+        rows.mass[members] = solved.mass
+        rows.u[members] = np.sqrt(_squares(solved.contributions, matrix) + widening)
+        rows.correction[members] = column(solved.mass - reading.centre)
+        if "air.density" in plan.targets:
+            rows.air_density[members] = column(solved.values[plan.targets["air.density"]])
+        for name in self.beside:
+            target = BESIDE[name]
+            if target not in solved.targets:
+                continue
+            value, contributions = solved.targets[target]
+            # what widens the mass widens what is proportional to it
+            per_mass = 0.0 if target in whole.estimates else np.divide(value, solved.mass)
+            of_rows = rows.beside[name]
+            of_rows[0][members] = column(value)
+            of_rows[1][members] = np.sqrt(_squares(contributions, matrix) + widening * np.square(per_mass))
+        if rows.drawn is not None:
+            found = masses_by_draws(
+                plan, solved, reading, size, count=self.count, probability=self.probability, seed=self.seed
+            )["load.mass"]
+            for one, values in zip(rows.drawn, (found.u, found.low, found.high), strict=True):
+                one[members] = values
+            half = coverage_factor(self.probability, math.inf) * rows.u[members]
+            differ = apart(rows.mass[members], half, found)
+            if np.any(differ):
+                rows.notices.setdefault(DIFFER, np.zeros(rows.mass.size, dtype=bool))[members] |= differ
+        for assumption in plan.assumed:
+            rows.assumed.setdefault(assumption.name, assumption)
+        _note(plan, solved, members, rows)
+
+
+def _squares(contributions: Sequence[Value], correlation: Floats | None = None) -> Value:
+    """Return the variance that contributions add up to, correlated where a matrix over them says so."""
+    total: Value = 0.0
+    for contribution in contributions:
+        if np.ndim(contribution) or contribution:
+            total = total + np.square(contribution)
+    if correlation is not None:
+        for i, j in np.argwhere(np.triu(correlation, 1)):
+            total = total + 2 * correlation[i, j] * contributions[i] * contributions[j]
+        total = np.maximum(total, 0.0)
+    return total
+
+
+def _noise(contributions: Sequence[Value], factors: Sequence[float]) -> Value:
+    """Return the variance of contributions that the mean of repeats lessens."""
+    return _squares([c * factor for c, factor in zip(contributions, factors, strict=True)])
+
+
+def _widening(plan: Plan, solved: Solution, alike: _Kind, size: int, seed: int) -> Value:
+    """Return what the bands add to the variance of the mass [kg²]."""
+    total: Value = 0.0
+    parts, factors = plan.parts(solved.values), lessened(plan)
+    for i in alike.linear:
+        total = total + np.square(parts.effect(i) * solved.per) + _noise(solved.effects[i], factors)
+    for band in alike.steady.values():
+        total = total + np.square(band * solved.per)
+    if alike.rest:
+        total = total + np.square(solved.per) * _by_row(plan, solved, alike.rest, size, seed)
+    return total
 
 
 def _inside(name: str, column: Column, rows: Rows) -> NDArray[np.bool_]:
@@ -95,75 +226,31 @@ def _inside(name: str, column: Column, rows: Rows) -> NDArray[np.bool_]:
 
 
 def _groups(
-    columns: Mapping[str, Column], choices: Mapping[str, Sequence[str]], usable: NDArray[np.bool_]
-) -> list[NDArray[np.intp]]:
-    """Return the rows that can be planned together."""
+    columns: Mapping[str, Column], words: Mapping[str, Sequence[str]], usable: NDArray[np.bool_]
+) -> list[tuple[Any, NDArray[np.intp]]]:
+    """Return the rows that can be planned together, each with what tells their kind from others."""
+    filled = [~np.isnan(column.values) for column in columns.values()]
+    filled += [~np.isnan(column.spread) for column in columns.values() if column.spread is not None]
     keys = np.zeros(usable.size, dtype=np.int64)
-    for column in columns.values():
-        keys = keys * 2 + np.isnan(column.values)
-        if column.spread is not None:
-            keys = keys * 2 + np.isnan(column.spread)
-    for words in choices.values():
-        _, codes = np.unique(np.asarray(words, dtype=str), return_inverse=True)
+    for mask in filled:
+        keys = keys * 2 + mask
+    for chosen in words.values():
+        _, codes = np.unique(np.asarray(chosen, dtype=str), return_inverse=True)
         keys = keys * (int(codes.max(initial=0)) + 1) + codes
     rows = np.flatnonzero(usable)
     if rows.size == 0:
         return []
     order = rows[np.argsort(keys[rows], kind="stable")]
-    cuts = np.flatnonzero(np.diff(keys[order])) + 1
-    return list(np.split(order, cuts))
-
-
-def _solve_group(
-    setup: Setup,
-    columns: Mapping[str, Column],
-    choices: Mapping[str, Sequence[str]],
-    members: NDArray[np.intp],
-    rows: Rows,
-    seed: int,
-) -> None:
-    whole = _setup_of(setup, columns, choices, members)
-    try:
-        reading = reading_of(whole)
-        plan = plan_reading(whole, reading.centre)
-    except InputError as error:
-        rows.faults[members] = "; ".join(str(fault) for fault in error.faults)
-        return
-    size = members.size
-
-    def column(value: Value) -> Floats:
-        return np.broadcast_to(np.asarray(value, dtype=np.float64), (size,))
-
-    bands = [i for i in range(len(plan.effects)) if i not in correctable(plan)]
-    linear, steady, rest = _sort_bands(_setup_of(setup, columns, choices, members[:1]), bands, seed)
-    solved = solve(plan, column(reading.centre), bands=linear)
-    variance = np.square(column(reading.u * solved.per))
-    for contribution in solved.contributions:
-        if np.ndim(contribution) or contribution:
-            variance = variance + np.square(contribution)
-    factors = _repeats(plan)
-    parts = plan.parts(solved.values)
-    for i in linear:
-        variance = variance + np.square(parts.effect(i) * solved.per)
-        for contribution, factor in zip(solved.effects[i], factors, strict=True):
-            if np.ndim(contribution) or contribution:
-                variance = variance + np.square(contribution * factor)
-    for band in steady.values():
-        variance = variance + np.square(band * solved.per)
-    if rest:
-        variance = variance + np.square(column(solved.per)) * _by_row(plan, solved, rest, size, seed)
-    rows.mass[members] = column(solved.mass)
-    rows.u[members] = np.sqrt(variance)
-    rows.correction[members] = column(solved.mass - reading.centre)
-    if "air.density" in plan.targets:
-        rows.air_density[members] = column(solved.values[plan.targets["air.density"]])
-    for assumption in plan.assumed:
-        rows.assumed.setdefault(assumption.name, assumption)
-    _note(plan, solved, members, rows)
+    found = []
+    for members in np.split(order, np.flatnonzero(np.diff(keys[order])) + 1):
+        first = int(members[0])
+        kind = (*(bool(mask[first]) for mask in filled), *(chosen[first] for chosen in words.values()))
+        found.append((kind, members))
+    return found
 
 
 def _setup_of(
-    setup: Setup, columns: Mapping[str, Column], choices: Mapping[str, Sequence[str]], members: NDArray[np.intp]
+    setup: Setup, columns: Mapping[str, Column], words: Mapping[str, Sequence[str]], members: NDArray[np.intp]
 ) -> Setup:
     """Return the set-up of some rows of one kind, their cells as columns."""
     estimates = dict(setup.estimates)
@@ -179,26 +266,55 @@ def _setup_of(
         else:
             spread = column.spread[members]
             estimates[name] = Estimate(centre, column.shape, float(spread[0]) if single else spread)
-    words = {name: words[int(members[0])] for name, words in choices.items() if words[int(members[0])]}
-    return replace(setup, estimates=estimates, choices={**setup.choices, **words})
+    first = int(members[0])
+    chosen = {name: cells[first] for name, cells in words.items() if cells[first]}
+    named = {name: chosen.pop(name) for name in materials.NAMED_BY if name in chosen}
+    made = replace(setup, estimates=estimates, choices={**setup.choices, **chosen})
+    return _with_materials(made, named)
 
 
-def _sort_bands(setup: Setup, bands: Sequence[int], seed: int) -> tuple[list[int], dict[int, float], list[int]]:
+def _with_materials(setup: Setup, named: Mapping[str, str]) -> Setup:
+    """Return the set-up with the densities of the named materials, at each row's own air temperature.
+
+    Raises :class:`InputError` where one is not known, or stands beside a density or a volume.
+    """
+    estimates, choices = dict(setup.estimates), dict(setup.choices)
+    for name, word in named.items():
+        body = name.partition(".")[0]
+        beside = [one for one in (f"{body}.density", f"{body}.volume") if one in estimates]
+        if beside:
+            raise InputError([Fault(name, f"is given beside {' and '.join(beside)}.", "Keep one.")])
+        material = materials.find(word)
+        air = estimates.get("air.temperature")
+        estimates |= materials.entries(name, material, None if air is None else air.centre)
+        if body == "load":
+            choices.setdefault("load.density_kind", material.kind)
+    return replace(setup, estimates=estimates, choices=choices)
+
+
+def _kind(first: Setup, seed: int) -> _Kind:
+    """Return what rows like the first one share."""
+    reading = reading_of(first)
+    plan = plan_reading(first, float(reading.centre))
+    bands = [i for i in range(len(plan.effects)) if i not in correctable(plan)]
+    return _Kind(plan, *_sort_bands(plan, float(reading.centre), bands, seed))
+
+
+def _sort_bands(
+    plan: Plan, reading: float, bands: Sequence[int], seed: int
+) -> tuple[list[int], dict[int, float], list[int]]:
     """Return which bands first order gives, which are the same [kg] for every row, and which want draws of each row."""
-    if not bands:
-        return [], {}, []
-    reading = reading_of(setup)
-    plan = plan_reading(setup, float(reading.centre))
-    repeats = setup.estimates.get("cycle.repeats", Estimate(1.0))
-    solved = solve(plan, float(reading.centre), bands=bands)
-    drawn = bands_by_draws(plan, float(solved.mass), seed=seed, repeats=round(float(repeats.centre)))
-    parts, factors, per = plan.parts(solved.values), _repeats(plan), float(solved.per)
     linear: list[int] = []
     steady: dict[int, float] = {}
     rest: list[int] = []
+    if not bands:
+        return linear, steady, rest
+    repeats = plan.setup.estimates.get("cycle.repeats", Estimate(1.0))
+    solved = solve(plan, reading, bands=bands)
+    drawn = bands_by_draws(plan, float(solved.mass), seed=seed, repeats=round(float(repeats.centre)))
+    parts, factors, per = plan.parts(solved.values), lessened(plan), float(solved.per)
     for i in bands:
-        contributions = [float(c) * f for c, f in zip(solved.effects[i], factors, strict=True)]
-        first = math.sqrt(sum(c**2 for c in contributions) + (float(parts.effect(i)) * per) ** 2)
+        first = math.sqrt(float(_noise(solved.effects[i], factors)) + (float(parts.effect(i)) * per) ** 2)
         if abs(first - drawn[i] * per) <= ALIKE * drawn[i] * per:
             linear.append(i)
         elif plan.reaches(mass_row(plan), plan.effects[i]) or any(
@@ -210,37 +326,11 @@ def _sort_bands(setup: Setup, bands: Sequence[int], seed: int) -> tuple[list[int
     return linear, steady, rest
 
 
-def _repeats(plan: Plan) -> list[float]:
-    """Return by what the mean of the repeats lessens each leaf's part: random noise only."""
-    repeats = plan.setup.estimates.get("cycle.repeats", Estimate(1.0))
-    lessened = 1 / math.sqrt(float(np.max(repeats.centre)))
-    return [lessened if leaf.origin == "internal" and leaf.varies != "never" else 1.0 for leaf in plan.leaves]
-
-
 def _by_row(plan: Plan, solved: Solution, bands: Sequence[int], size: int, seed: int) -> Floats:
-    """Return the mean square about zero [kg²] of some bands in each row, on draws as a leading axis."""
+    """Return the mean square about zero [kg²] of some bands in each row."""
     drawn = draws(len(plan.leaves), max(1, ROW_DRAWS // BATCH), seed)
-    some = slice(0, ROW_DRAWS)
     found = np.zeros(size)
-    for start in range(0, size, _AT_A_TIME):
-        part = slice(start, min(start + _AT_A_TIME, size))
-
-        def rows_of(value: Any, part: slice = part) -> Any:
-            return value[part] if np.ndim(value) else value
-
-        leaf_values: list[Any] = []
-        for j, leaf in enumerate(plan.leaves):
-            estimate = replace(
-                leaf.estimate, centre=rows_of(leaf.estimate.centre), spread=rows_of(leaf.estimate.spread)
-            )
-            if leaf.name == "load.mass":
-                leaf_values.append(rows_of(solved.mass))
-            elif estimate.is_exact:
-                leaf_values.append(estimate.centre)
-            else:
-                score = drawn.score(j, estimate.shape, estimate.dof)[some, np.newaxis]
-                leaf_values.append(estimate.place(score))
-        cut = replace(plan, nodes=tuple(replace(n, centre=rows_of(n.centre)) for n in plan.nodes))
+    for part, cut, leaf_values in drawn_rows(plan, solved.mass, drawn, slice(0, ROW_DRAWS), lessened(plan), size):
         parts = cut.parts(cut.evaluate(leaf_values))
         for i in bands:
             square = np.mean(np.square(np.atleast_2d(parts.effect(i))), axis=0)

@@ -13,7 +13,7 @@ from envcorr.errors import Fault, InputError
 from envcorr.estimate import Estimate, Value
 from envcorr.jobs.weighings import Run
 from envcorr.model import make_plan
-from envcorr.plan import Parts, Plan
+from envcorr.plan import Parts, Plan, is_zero
 from envcorr.propagation import FIRST_BATCHES, draws
 from envcorr.setup import Setup
 
@@ -26,6 +26,7 @@ __all__ = [
     "mass_row",
     "plan_reading",
     "reading_of",
+    "secants",
     "solve",
 ]
 
@@ -70,14 +71,16 @@ def reading_of(setup: Setup) -> Estimate:
     raise InputError([fault])
 
 
-def plan_reading(setup: Setup, reading: Value) -> Plan:
+def plan_reading(setup: Setup, reading: Value, like: Plan | None = None) -> Plan:
     """Return the plan of the effects on a reading [kg]. What a sensor reads is uncertain by the sensor's error.
 
-    Raises :class:`InputError` where the buoyancy cannot be computed and is not waived.
+    ``like`` is an earlier one that may serve again with other numbers. Raises :class:`InputError` where the buoyancy
+    cannot be computed and is not waived.
     """
     estimates = {**setup.estimates, "load.mass": Estimate(np.abs(reading))}
     choices = {**setup.choices, "target.measurand": "mass"}
-    plan = make_plan(replace(setup, estimates=estimates, choices=choices), read=True)
+    setup = replace(setup, estimates=estimates, choices=choices)
+    plan = (like.renewed(setup) if like else None) or make_plan(setup, read=True)
     for missing in plan.not_assessed:
         if missing.effect.definition and missing.effect.name not in setup.waived:
             names = ", ".join(missing.lacks)
@@ -97,18 +100,31 @@ def mass_row(plan: Plan) -> int:
 
 
 def solve(plan: Plan, reading: Value, *, by_effect: bool = False, bands: Sequence[int] = ()) -> Solution:
-    """Return the mass for which mass plus the correctable effects gives the reading [kg], by secants.
+    """Return the mass for which mass plus the correctable effects gives the reading [kg].
 
-    The effects are all but linear in the mass, so two steps do for most; the residual is then a few roundings. The
-    contributions are central differences at the solved mass, through the implicit function. ``bands`` lists effects
+    The contributions are central differences at the solved mass, through the implicit function. ``bands`` lists effects
     that cannot be corrected but whose first-order contributions are wanted too (``effects`` of the result).
+    """
+    leaf_values = [leaf.estimate.centre for leaf in plan.leaves]
+    mass, slope, values = secants(plan, reading, leaf_values, plan.centres())
+    leaf_values[mass_row(plan)] = mass
+    return _contributions(plan, mass, 1 / (1 + slope), values, leaf_values, by_effect, bands)
+
+
+def secants(
+    plan: Plan, reading: Value, leaf_values: list[Value], base: Sequence[Any]
+) -> tuple[Value, Value, list[Any]]:
+    """Return the mass [kg] behind a reading, d(added)/d(mass) there, and the values of the nodes.
+
+    ``base`` holds the values of the nodes for ``leaf_values`` but for the mass. The effects are all but linear in the
+    mass, so two steps do for most; the residual is then a few roundings.
     """
     chosen = correctable(plan)
     row = mass_row(plan)
-    leaf_values = [leaf.estimate.centre for leaf in plan.leaves]
+    leaf_values = list(leaf_values)
     size = np.abs(reading)
     leaf_values[row] = reading
-    values = plan.evaluate(leaf_values)
+    values = plan.evaluate(leaf_values, base=base, changed=row)
     added = plan.parts(values).total(chosen)
     before: Value = reading
     mass: Value = reading - added
@@ -125,7 +141,7 @@ def solve(plan: Plan, reading: Value, *, by_effect: bool = False, bands: Sequenc
         if np.all(np.abs(residual) <= CLOSE * size):
             break
         before, mass = mass, mass - residual / (1 + slope)
-    return _contributions(plan, mass, 1 / (1 + slope), values, leaf_values, by_effect, bands)
+    return mass, slope, values
 
 
 def _contributions(
@@ -142,23 +158,28 @@ def _contributions(
     backwards = _Backwards(plan, values, leaf_values)
     parts = plan.parts(values)
     total = backwards.leaves(_seeds_of_total(plan, parts, chosen))
-    contributions = [-per * slope * leaf.estimate.u for slope, leaf in zip(total, plan.leaves, strict=True)]
-    contributions[row] = 0.0  # solved for, not given
+    contributions = _spread(plan, total, -per)
     effects: dict[int, list[Value]] = {}
     for i in [*(chosen if by_effect else ()), *bands]:
         slopes = backwards.leaves(_seeds_of_total(plan, parts, [i]))
-        effects[i] = [per * slope * leaf.estimate.u for slope, leaf in zip(slopes, plan.leaves, strict=True)]
-        effects[i][row] = 0.0
+        effects[i] = _spread(plan, slopes, per)
     targets: dict[str, tuple[Value, list[Value]]] = {}
     for name in [name for name in TARGETS if name in plan.targets] if by_effect else ():
         node = plan.targets[name]
         slopes = backwards.leaves({node: 1.0})
-        direct = [slope * leaf.estimate.u for slope, leaf in zip(slopes, plan.leaves, strict=True)]
-        direct[row] = 0.0
-        by_mass = slopes[row]
-        found = [own + by_mass * through for own, through in zip(direct, contributions, strict=True)]
+        direct = _spread(plan, slopes, 1.0)
+        found = [own + slopes[row] * through for own, through in zip(direct, contributions, strict=True)]
         targets[name] = (values[node], found)
     return Solution(mass, per, values, contributions, effects, targets)
+
+
+def _spread(plan: Plan, slopes: Sequence[Value], factor: Value) -> list[Value]:
+    """Return factor times slope times u of every leaf; nothing for the mass, which is solved for, not given."""
+    row = mass_row(plan)
+    return [
+        0.0 if j == row or leaf.estimate.is_exact or is_zero(slope) else factor * slope * leaf.estimate.u
+        for j, (slope, leaf) in enumerate(zip(slopes, plan.leaves, strict=True))
+    ]
 
 
 def _seeds_of_total(plan: Plan, parts: Parts, chosen: Sequence[int]) -> dict[int, Value]:
@@ -187,7 +208,8 @@ def _seeds_of_total(plan: Plan, parts: Parts, chosen: Sequence[int]) -> dict[int
 class _Backwards:
     """Slopes of a result in every leaf, node by node from the result back (reverse accumulation).
 
-    A law's own slopes are central differences in one input at a time, worked out once however many results ask.
+    A law's own slopes are its derivatives where it gives them, else central differences in one input at a time; worked
+    out once however many results ask.
     """
 
     def __init__(self, plan: Plan, values: list[Any], leaf_values: Sequence[Value]) -> None:
@@ -215,6 +237,9 @@ class _Backwards:
             node = self.plan.nodes[i]
             assert node.function is not None
             inputs = [self.values[j] for j in node.inputs]
+            if node.slopes is not None:
+                self.slopes[i] = list(node.slopes(*inputs))
+                return self.slopes[i]
             found: list[Value] = []
             for k, j in enumerate(node.inputs):
                 if j not in self.active:

@@ -23,6 +23,7 @@ __all__ = [
     "compressibility",
     "density_cipm",
     "density_cipm_column",
+    "density_cipm_slopes",
     "density_coolprop",
     "density_oiml",
     "dew_point_from_vapour_fraction",
@@ -34,6 +35,7 @@ __all__ = [
     "vapour_fraction_from_dew_point",
     "vapour_fraction_from_humidity",
     "vapour_fraction_from_wet_bulb",
+    "vapour_fraction_slopes",
 ]
 
 _T0 = ZERO_CELSIUS.value
@@ -47,7 +49,15 @@ _MOLAR_MASS_CO2_SLOPE = 12.011e-3  # kg/mol: CO2 takes the place of O2, so what 
 _CO2_REFERENCE = 0.0004
 _MOLAR_MASS_WATER = 18.01528e-3  # kg/mol
 
+# equation (A1.4)
+_A0, _A1, _A2 = 1.58123e-6, -2.9331e-8, 1.1043e-10  # K/Pa, 1/Pa, 1/(K Pa)
+_B0, _B1 = 5.707e-6, -2.051e-8  # K/Pa, 1/Pa
+_C0, _C1 = 1.9898e-4, -2.376e-6  # K/Pa, 1/Pa
+_D0, _E0 = 1.83e-11, -0.765e-8  # K²/Pa²
+
 _A, _B, _C, _D = 1.2378847e-5, -1.9121316e-2, 33.93711047, -6.3431645e3  # 1/K², 1/K, 1, K; CIPM-2007 (A1.1)
+
+_F0, _F_P, _F_T = 1.00062, 3.14e-8, 5.6e-7  # 1, 1/Pa, 1/K²; CIPM-2007 (A1.2)
 
 
 def saturation_vapour_pressure(t_kelvin: Value) -> Value:
@@ -61,7 +71,7 @@ def saturation_vapour_pressure(t_kelvin: Value) -> Value:
 def enhancement_factor(temperature: Value, pressure: Value) -> Value:
     """Return the factor by which air at ``pressure`` [Pa] raises the vapour pressure; CIPM-2007 (A1.2)."""
     t = temperature - _T0
-    return 1.00062 + 3.14e-8 * pressure + 5.6e-7 * t * t  # (A1.2)
+    return _F0 + _F_P * pressure + _F_T * t * t  # (A1.2)
 
 
 def vapour_fraction_from_humidity(temperature: Value, pressure: Value, humidity: Value) -> Value:
@@ -113,9 +123,9 @@ def compressibility(temperature: Value, pressure: Value, vapour_fraction: Value)
 
 def _compressibility(t: Value, q: Value, x: Value) -> Value:
     """Return Z from t [°C], q = p/T [Pa/K] and the mole fraction of water vapour x."""
-    dry = 1.58123e-6 + t * (1.1043e-10 * t - 2.9331e-8)  # a0 + a1 t + a2 t²
-    moist = 5.707e-6 - 2.051e-8 * t + x * (1.9898e-4 - 2.376e-6 * t)  # b0 + b1 t + (c0 + c1 t) x
-    return 1 - q * (dry + x * moist - q * (1.83e-11 - 0.765e-8 * x * x))  # (A1.4)
+    dry = _A0 + t * (_A2 * t + _A1)
+    moist = _B0 + _B1 * t + x * (_C0 + _C1 * t)
+    return 1 - q * (dry + x * moist - q * (_D0 + _E0 * x * x))  # (A1.4)
 
 
 def density_cipm(temperature: Value, pressure: Value, vapour_fraction: Value, co2: Value) -> Value:
@@ -129,6 +139,38 @@ def density_cipm(temperature: Value, pressure: Value, vapour_fraction: Value, co
     q = pressure / temperature
     z = _compressibility(temperature - _T0, q, vapour_fraction)
     return q * (dry - vapour_fraction * (dry - water)) / z  # (1): p Ma/(Z R T) (1 - xv (1 - Mv/Ma))
+
+
+def density_cipm_slopes(temperature: Value, pressure: Value, vapour_fraction: Value, co2: Value) -> tuple[Value, ...]:
+    """Return the partial derivatives of :func:`density_cipm` in its four arguments, in order."""
+    dry = (_MOLAR_MASS_DRY + _MOLAR_MASS_CO2_SLOPE * (co2 - _CO2_REFERENCE)) / _R
+    excess = dry - _MOLAR_MASS_WATER / _R
+    t, q, x = temperature - _T0, pressure / temperature, vapour_fraction
+    cross = _C0 + _C1 * t
+    real = _A0 + t * (_A2 * t + _A1) + x * (_B0 + _B1 * t + x * cross)
+    square = _D0 + _E0 * x * x
+    z = 1 - q * (real - q * square)
+    by_q = 2 * q * square - real
+    by_t = -q * (_A1 + 2 * _A2 * t + x * (_B1 + _C1 * x))
+    by_x = -q * (_B0 + _B1 * t + 2 * x * (cross - q * _E0))
+    moist, per = dry - x * excess, 1 / z
+    by_pressure = moist * per * (1 - q * by_q * per) / temperature
+    return (
+        -q * by_pressure - q * moist * by_t * per * per,
+        by_pressure,
+        -q * per * (excess + moist * by_x * per),
+        q * per * (1 - x) * (_MOLAR_MASS_CO2_SLOPE / _R),
+    )
+
+
+def vapour_fraction_slopes(temperature: Value, pressure: Value, humidity: Value) -> tuple[Value, ...]:
+    """Return the partial derivatives of :func:`vapour_fraction_from_humidity` in its three arguments, in order."""
+    saturation = saturation_vapour_pressure(temperature)
+    factor = enhancement_factor(temperature, pressure)
+    saturated = factor * saturation / pressure
+    by_temperature = saturated * (2 * _A * temperature + _B - _D / temperature**2)
+    by_temperature = by_temperature + 2 * _F_T * (temperature - _T0) * saturation / pressure
+    return humidity * by_temperature, humidity * (_F_P * saturation - saturated) / pressure, saturated
 
 
 def density_cipm_column(

@@ -31,6 +31,17 @@ def mass(result: MassResult) -> dict[str, Any]:
         "reading": _told(result.reading, "mass", "g"),
         "correction": figure(result.correction, "mass", "mg", u=result.mass.u),
         "air_density": _told(result.air_density, "density", "kg/m³"),
+        "by_draws": {
+            name.removeprefix("load."): {
+                "u": figure(one.u, "mass", "mg"),
+                "coverage_interval": [figure(one.low, "mass", "g"), figure(one.high, "mass", "g")],
+                "coverage_probability": result.probability,
+                "draws": one.size,
+                "first_order_agrees": one.agrees,
+            }
+            for name, one in result.by_draws.items()
+        }
+        or None,
         "budget": {
             "quantities": [
                 {
