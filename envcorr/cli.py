@@ -15,7 +15,8 @@ import click
 
 import envcorr
 from envcorr.cli_mass import mass
-from envcorr.cli_tools import air_options, emit_blocks, emit_json, json_option, set_option
+from envcorr.cli_record import record
+from envcorr.cli_tools import air_options, emit_blocks, emit_json, json_option, record_options, recorder, set_option
 
 __all__ = ["cli", "main"]
 
@@ -108,6 +109,8 @@ def air(setup: str | None, changes: Sequence[str], as_json: bool, **given: str |
 @click.option("--as-read", is_flag=True, help="Rank what spoils it by the reading as it is, not as corrected.")
 @click.option("--draws", type=click.IntRange(1, 2**20), help="Number of Monte Carlo draws (at least 16384).")
 @click.option("--seed", type=click.IntRange(min=0), default=0, show_default=True, help="Of the draws.")
+@record_options
+@click.option("--force", is_flag=True, help="Replace the record where it is already there.")
 @json_option
 @click.pass_context
 def room(
@@ -118,17 +121,26 @@ def room(
     as_read: bool,
     draws: int | None,
     seed: int,
+    record_file: str | None,
+    notes: Sequence[str],
+    force: bool,
     as_json: bool,
 ) -> None:
     """Can this room reach the target, and what spoils it?"""
-    from envcorr.intake.setup_file import read_setup
+    from envcorr.intake.setup_file import parse_setup
+    from envcorr.intake.toml_file import read_mapping
     from envcorr.jobs.room import check_room
+    from envcorr.render import json
 
-    result = check_room(read_setup(setup, changes=changes), draws=draws, seed=seed, as_read=as_read)
+    written = read_mapping(setup)
+    read = parse_setup(written, changes=changes, what=setup)
+    keep = recorder(record_file, notes, force=force, set_up=written, changes=changes)
+    how: dict[str, Any] = {"draws": draws, "seed": seed, "as_read": as_read}
+    result = check_room(read, **how)
+    answer = json.room(result)
+    keep("room", how, answer)
     if as_json:
-        from envcorr.render import json
-
-        emit_json(json.room(result))
+        emit_json(answer)
     else:
         from envcorr.document import room as page
 
@@ -157,6 +169,7 @@ def explain(name: str | None, as_json: bool) -> None:
 
 
 cli.add_command(mass)
+cli.add_command(record)
 
 
 def main(args: Sequence[str] | None = None) -> None:

@@ -7,9 +7,12 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from envcorr.cli_tools import emit_blocks, emit_json, json_option, set_option
+from envcorr.cli_tools import emit_blocks, emit_json, json_option, record_options, recorder, set_option
 
 if TYPE_CHECKING:
+    from pathlib import Path
+
+    from envcorr.jobs.mass_file import TableSummary
     from envcorr.setup import Setup
 
 __all__ = ["mass"]
@@ -49,6 +52,7 @@ OPTIONS = {
 @click.option("--draws", type=click.IntRange(2**10, 2**20), help="How many for that: 16384, of a row 4096.")
 @click.option("--also", multiple=True, type=click.Choice(tuple(ALSO)), help="Tell that of each row too, as columns.")
 @click.option("--seed", type=click.IntRange(min=0), default=0, show_default=True, help="Of the draws.")
+@record_options
 @json_option
 def mass(
     table: str | None,
@@ -62,6 +66,8 @@ def mass(
     draws: int | None,
     also: Sequence[str],
     seed: int,
+    record_file: str | None,
+    notes: Sequence[str],
     as_json: bool,
     **given: str | None,
 ) -> None:
@@ -70,48 +76,50 @@ def mass(
     For example: envcorr mass --reading "1.25000 g" --density "1050 kg/m³" --temperature "21.4 °C"
     --pressure "943.1 hPa" --humidity "42 %" --adjusted "just before"
     """
-    from envcorr.intake.options import coverage_probability
-    from envcorr.intake.setup_file import parse_setup, read_setup
-    from envcorr.jobs.mass import find_mass
+    from pathlib import Path
 
-    every = [*(f"{OPTIONS[name][0]}={text}" for name, text in given.items() if text is not None), *changes]
-    if setup is None:
-        read = parse_setup({}, changes=every, require=(), what="the options")
-    else:
-        read = read_setup(setup, changes=every, require=())
-    coverage = coverage_probability(probability)
+    from envcorr.intake.options import coverage_probability
+    from envcorr.intake.setup_file import parse_setup
+    from envcorr.intake.toml_file import read_mapping
+    from envcorr.jobs.mass import find_mass
+    from envcorr.render import json_mass
+
     if draws is not None and not monte_carlo:
         raise click.UsageError("--draws needs --monte-carlo.")
     if table is None and (out or mapped or also):
         raise click.UsageError("--out, --column and --also are for a TABLE.")
-    if table is not None:
-        if out is None:
-            raise click.UsageError("A table needs --out FILE.")
-        count = (draws or 2**12) if monte_carlo else 0
-        how = {
-            "mapped": mapped,
-            "force": force,
-            "probability": coverage,
-            "beside": [ALSO[word] for word in also],
-            "count": count,
-            "seed": seed,
-        }
-        _table(table, out, read, as_json=as_json, **how)
+    if table is not None and out is None:
+        raise click.UsageError("A table needs --out FILE.")
+    every = [*(f"{OPTIONS[name][0]}={text}" for name, text in given.items() if text is not None), *changes]
+    written = {} if setup is None else read_mapping(setup)
+    read = parse_setup(written, changes=every, require=(), what=setup or "the options")
+    count = (draws or (2**14 if table is None else 2**12)) if monte_carlo else 0
+    how: dict[str, Any] = {"probability": coverage_probability(probability), "count": count, "seed": seed}
+    keep = recorder(record_file, notes, force=force, set_up=written, changes=every)
+    if table is None or out is None:
+        result = find_mass(read, **how)
+        answer = json_mass.mass(result)
+        keep("mass", how, answer)
+        if as_json:
+            emit_json(answer)
+        else:
+            from envcorr.document import mass as page
+
+            emit_blocks(page.document(result))
         return
-    result = find_mass(read, probability=coverage, count=(draws or 2**14) if monte_carlo else 0, seed=seed)
+    how |= {"mapped": list(mapped), "beside": [ALSO[word] for word in also]}
+    summary = _with_progress(Path(table), Path(out), read, force=force, **how)
+    answer = json_mass.table(summary)
+    keep("table", how, answer, Path(table), Path(out))
     if as_json:
-        from envcorr.render import json_mass
-
-        emit_json(json_mass.mass(result))
+        emit_json(answer)
     else:
-        from envcorr.document import mass as page
+        from envcorr.document import mass_table as page_of_table
 
-        emit_blocks(page.document(result))
+        emit_blocks(page_of_table.document(summary))
 
 
-def _table(table: str, out: str, setup: Setup, *, as_json: bool, **how: Any) -> None:
-    from pathlib import Path
-
+def _with_progress(table: Path, out: Path, setup: Setup, **how: Any) -> TableSummary:
     from rich.console import Console
     from rich.progress import BarColumn, MofNCompleteColumn, Progress, TimeRemainingColumn
 
@@ -124,15 +132,7 @@ def _table(table: str, out: str, setup: Setup, *, as_json: bool, **how: Any) -> 
         def progress(done: int, total: int) -> None:
             bar.update(task, completed=done, total=total)
 
-        summary = convert(Path(table), Path(out), setup, progress=progress, **how)
-    if as_json:
-        from envcorr.render import json_mass
-
-        emit_json(json_mass.table(summary))
-    else:
-        from envcorr.document import mass_table as page
-
-        emit_blocks(page.document(summary))
+        return convert(table, out, setup, progress=progress, **how)
 
 
 for _name, (_quantity, _text) in reversed(OPTIONS.items()):

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import os
 import sys
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import TYPE_CHECKING, Any, TypeVar
 
 import click
@@ -12,7 +12,16 @@ import click
 if TYPE_CHECKING:
     from envcorr.document.blocks import Block
 
-__all__ = ["AIR_OPTIONS", "air_options", "emit_blocks", "emit_json", "json_option", "set_option"]
+__all__ = [
+    "AIR_OPTIONS",
+    "air_options",
+    "emit_blocks",
+    "emit_json",
+    "json_option",
+    "record_options",
+    "recorder",
+    "set_option",
+]
 
 Command = TypeVar("Command", bound=Callable[..., Any])
 
@@ -44,6 +53,50 @@ def set_option(function: Command) -> Command:
         metavar="NAME=VALUE",
         help='Give or change a quantity, as in --set air.temperature="22 °C"; may be repeated.',
     )(function)
+
+
+def record_options(function: Command) -> Command:
+    """Add --record and --note."""
+    function = click.option(
+        "--note",
+        "notes",
+        multiple=True,
+        metavar="NAME=TEXT",
+        help='A note for the record, as in --note item="foam 7"; may be repeated.',
+    )(function)
+    return click.option(
+        "--record", "record_file", metavar="FILE.json", help="Write down all that the answer was computed from and by."
+    )(function)
+
+
+def recorder(
+    file: str | None, notes: Sequence[str], *, force: bool, set_up: Mapping[str, Any], changes: Sequence[str]
+) -> Callable[..., None]:
+    """Return what keeps an answer as a record: called with its kind, how it was computed, the answer, and any tables.
+
+    Notes and the file's name are looked at before anything is computed; without a file nothing is kept.
+    """
+    from pathlib import Path
+
+    if file is None:
+        if notes:
+            raise click.UsageError("--note needs --record FILE.json.")
+        return lambda *_: None
+    from envcorr.record import Order, check_record, read_notes, write_record
+
+    said, path = read_notes(notes), Path(file)
+    check_record(path, force=force)
+
+    def keep(
+        kind: str,
+        how: Mapping[str, Any],
+        answer: Mapping[str, Any],
+        table: Path | None = None,
+        target: Path | None = None,
+    ) -> None:
+        write_record(path, Order(kind, set_up, changes, how, table, target), answer, said, force=force)
+
+    return keep
 
 
 def air_options(function: Command) -> Command:

@@ -230,7 +230,7 @@ def test_files_that_cannot_be_used(tmp_path, foam):
         with pytest.raises(InputError, match=words):
             convert(tmp_path / name, tmp_path / "out.csv", setup())
     for target, words in (
-        (foam, "is the table itself"),
+        (foam, "is the input itself"),
         (tmp_path / "no" / "out.csv", "folder is not there"),
         (tmp_path / "out.doc", "Known are"),
     ):
@@ -264,6 +264,24 @@ def test_killed_in_mid_write_leaves_no_answer(tmp_path):
     assert any(path.name.endswith(".part") for path in tmp_path.iterdir())  # it was writing
     assert not (tmp_path / "out.csv").exists()
     assert path.stat().st_size == before
+
+
+@pytest.mark.parametrize("suffix", [".csv", ".xlsx", ".parquet"])
+def test_a_full_disk_leaves_no_answer(tmp_path, suffix):
+    """No file may grow over 20 kB, as on a full disk: a sentence, and nothing half-written."""
+    rows = "\n".join(f"{1 + i % 7 / 10:.1f},{900 + i % 400}" for i in range(3000))
+    path = write(tmp_path, f"reading [g],load.density [kg/m³]\n{rows}\n")
+    code = (
+        "import pathlib, resource, signal; from envcorr.jobs.mass_file import convert;"
+        "from tests.test_mass_table import setup;"
+        "signal.signal(signal.SIGXFSZ, signal.SIG_IGN); resource.setrlimit(resource.RLIMIT_FSIZE, (20_000, 20_000));"
+        f"folder = pathlib.Path({str(tmp_path)!r}); convert(folder / 'in.csv', folder / 'out{suffix}', setup())"
+    )
+    done = subprocess.run([sys.executable, "-c", code], cwd=os.getcwd(), check=False, capture_output=True, text=True)
+    assert done.returncode == 1
+    assert "InputError" in done.stderr
+    assert "could not be written" in done.stderr.splitlines()[-1]
+    assert [file.name for file in tmp_path.iterdir()] == [path.name]
 
 
 def test_command_line(tmp_path, foam):

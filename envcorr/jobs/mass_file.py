@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import os
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -19,6 +18,7 @@ from envcorr.jobs.mass_table import BESIDE, BLOCK, Rows, RowSolver
 from envcorr.numerals import quoted
 from envcorr.propagation import coverage_factor
 from envcorr.setup import Setup
+from envcorr.whole_file import check_target, whole_file
 
 if TYPE_CHECKING:
     import polars as pl
@@ -45,6 +45,8 @@ class TableSummary:
     """A sentence, and how many rows it concerns."""
     notices: dict[str, int] = field(default_factory=dict)
     assumed: dict[str, Any] = field(default_factory=dict)
+    sums: dict[str, float] = field(default_factory=dict)
+    """Control totals: the sum of each column of numbers that was added, in the order of the rows."""
     k: float = 2.0
     probability: float = 0.95
 
@@ -89,7 +91,7 @@ def convert(
     import polars as pl
     from polars.io.plugins import register_io_source
 
-    _check_target(source, target, force)
+    check_target(target, endings=FORMATS, force=force, inputs=(source,))
     table = scan(source)
     frame, layout = table.frame, layout_of(table, mapped)
     added = added_headers(layout.reading_unit, beside, drawn=count > 0)
@@ -116,32 +118,9 @@ def convert(
 
     schema = dict(frame.collect_schema()) | dict.fromkeys(added[:-1], pl.Float64()) | {added[-1]: pl.String()}
     answered = register_io_source(blocks, schema=schema, is_pure=True)
-    part = target.with_name(f".{target.name}.{os.getpid()}.part")
-    try:
+    with whole_file(target) as part:
         _write(answered, part, target.suffix.lower(), table.separator or ",", layout.comma, total)
-        os.replace(part, target)
-    except OSError as error:
-        reason = error.strerror or str(error)
-        raise InputError(
-            [Fault(quoted(str(target)), f"could not be written: {reason}.", "Nothing was written.")]
-        ) from None
-    finally:
-        part.unlink(missing_ok=True)
     return summary
-
-
-def _check_target(source: Path, target: Path, force: bool) -> None:
-    name = quoted(str(target))
-    if target.suffix.lower() not in FORMATS:
-        raise InputError([Fault(name, f"ends in {quoted(target.suffix)}.", f"Known are {', '.join(FORMATS)}.")])
-    if not target.parent.is_dir():
-        raise InputError([Fault(name, "its folder is not there.", "Make the folder first.")])
-    if target.is_dir():
-        raise InputError([Fault(name, "is a folder.", "Name a file in it.")])
-    if target.exists() and source.exists() and target.samefile(source):
-        raise InputError([Fault(name, "is the table itself.", "Give another name: the input is never replaced.")])
-    if target.exists() and not force:
-        raise InputError([Fault(name, "is already there.", "Give another name, or --force to replace it.")])
 
 
 def _answer(
@@ -157,9 +136,10 @@ def _answer(
     found = solver.solve(columns, words, batch.height)
     found.faults[unreadable] = faults[unreadable]
     failed = np.isnan(found.mass)
-    numbers = [
-        pl.Series(values, dtype=pl.Float64, nan_to_null=True) for values in _numbers(found, layout, summary, failed)
-    ]
+    sizes = _numbers(found, layout, summary, failed)
+    for header, values in zip(added, sizes, strict=False):
+        summary.sums[header] = summary.sums.get(header, 0.0) + float(np.nansum(values))
+    numbers = [pl.Series(values, dtype=pl.Float64, nan_to_null=True) for values in sizes]
     notes = pl.Series(_notes(found, failed, summary), dtype=pl.String)
     summary.rows += batch.height
     summary.assumed.update(found.assumed)
@@ -200,8 +180,15 @@ def _notes(found: Rows, failed: NDArray[np.bool_], summary: TableSummary) -> lis
 
 
 def _write(answered: pl.LazyFrame, part: Path, suffix: str, separator: str, comma: bool, total: int) -> None:
+    import polars as pl
+
     if suffix == ".parquet":
-        answered.sink_parquet(part)
+        try:
+            answered.sink_parquet(part)
+        except pl.exceptions.ComputeError as error:
+            if "IO error" in str(error):
+                raise OSError(str(error).rpartition("IO error: ")[2]) from error
+            raise
     elif suffix == ".xlsx":
         if total > MOST_XLSX_ROWS:
             raise InputError(
@@ -216,7 +203,11 @@ def _write(answered: pl.LazyFrame, part: Path, suffix: str, separator: str, comm
 def _write_sheet(frame: pl.DataFrame, part: Path) -> None:
     """Write a sheet in which texts stay texts: nothing is read as a formula or a link."""
     import xlsxwriter
+    from xlsxwriter.exceptions import FileCreateError
 
     options = {"strings_to_formulas": False, "strings_to_urls": False, "strings_to_numbers": False}
-    with xlsxwriter.Workbook(str(part), options) as book:
-        frame.write_excel(book, autofit=False)
+    try:
+        with xlsxwriter.Workbook(str(part), options) as book:
+            frame.write_excel(book, autofit=False)
+    except FileCreateError as error:
+        raise OSError(str(error)) from error

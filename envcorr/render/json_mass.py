@@ -92,6 +92,7 @@ def table(summary: TableSummary) -> dict[str, Any]:
         "not_computed": summary.failed,
         "reasons": summary.faults,
         "row_notices": summary.notices,
+        "sums": summary.sums,
         "k": summary.k,
         "coverage_probability": summary.probability,
     }
