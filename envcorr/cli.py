@@ -155,10 +155,20 @@ def room(
 def explain(name: str | None, as_json: bool) -> None:
     """Explain a quantity, a choice or an effect.
 
-    Without a name, all of them are listed.
+    Without a name, all of them are listed; "materials" lists the densities that are known by name.
     """
+    from envcorr import materials
     from envcorr.document import explain as page
 
+    if name in ("materials", *materials.NAMED_BY):
+        from envcorr.document import materials as page_of_materials
+        from envcorr.render import json_explain
+
+        if as_json:
+            emit_json(json_explain.list_of_materials())
+        else:
+            emit_blocks(page_of_materials.document())
+        return
     subject = None if name is None else page.look_up(name)
     if as_json:
         from envcorr.render import json_explain

@@ -2,10 +2,14 @@
 
 from __future__ import annotations
 
+import json
+
 import pytest
+from click.testing import CliRunner
 from iapws import IAPWS95
 
 from envcorr import materials
+from envcorr.cli import cli
 from envcorr.errors import InputError
 from envcorr.intake.setup_file import parse_setup
 
@@ -77,3 +81,15 @@ def test_a_name_in_a_set_up():
 def test_refused(load, words):
     with pytest.raises(InputError, match=words):
         parse_setup({**REST, "load": {"mass": "5 g", **load}})
+
+
+@pytest.mark.parametrize("word", ["materials", "load.material"])
+def test_listed_with_their_sources(word):
+    page = CliRunner().invoke(cli, ["explain", word]).stdout
+    unbroken = "".join(page.split())  # a long name may be broken
+    assert all(name in unbroken for name in materials.names())
+    listed = json.loads(CliRunner().invoke(cli, ["explain", word, "--json"]).stdout)["result"]["materials"]
+    water = next(one for one in listed if one["name"] == "water")
+    assert water["density"]["value"] == pytest.approx(998.2042, abs=2e-4)  # Tanaka 2001 less the dissolved air
+    assert water["expansion"]["value"] == pytest.approx(207, abs=2)  # ppm/K at 20 °C, CRC handbook (from memory)
+    assert all(one["source"] for one in listed)

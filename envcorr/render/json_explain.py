@@ -5,14 +5,14 @@ from __future__ import annotations
 import math
 from typing import Any
 
-from envcorr import units
+from envcorr import materials, units
 from envcorr.catalogue import CATALOGUE, Catalogue, Place
 from envcorr.document.explain import Subject, acts_on, condition, needs, rests_on, used_by
 from envcorr.effect import Effect, Way, parameters
 from envcorr.render.json import envelope, estimate, figure
 from envcorr.vocabulary import Choice
 
-__all__ = ["explain"]
+__all__ = ["explain", "list_of_materials"]
 
 
 def explain(subject: Subject | None, catalogue: Catalogue = CATALOGUE) -> dict[str, Any]:
@@ -28,6 +28,24 @@ def explain(subject: Subject | None, catalogue: Catalogue = CATALOGUE) -> dict[s
             "choices": [_subject(choice, catalogue) for choice in catalogue.choices.values()],
         },
     )
+
+
+def list_of_materials() -> dict[str, Any]:
+    """Return the materials by name, each with its density at 20 °C and its source."""
+    found = []
+    for name in materials.names():
+        one = materials.find(name)
+        slope = materials.expansion(one)
+        found.append(
+            {
+                "name": name,
+                "density": estimate(materials.density(one), "density"),
+                "expansion": figure(None if slope is None else float(slope), "relative per temperature"),
+                "density_kind": one.kind,
+                "source": one.source,
+            }
+        )
+    return envelope("explain", {"materials": found})
 
 
 def _subject(subject: Subject, catalogue: Catalogue) -> dict[str, Any]:
