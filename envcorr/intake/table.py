@@ -26,13 +26,25 @@ from envcorr.numerals import UnitError, quoted
 if TYPE_CHECKING:
     import polars as pl
 
-__all__ = ["FORMATS", "MOST_COLUMNS", "Column", "Field", "Layout", "Source", "layout_of", "read_columns", "scan"]
+__all__ = [
+    "FORMATS",
+    "MOST_COLUMNS",
+    "Column",
+    "Field",
+    "Layout",
+    "Source",
+    "layout_of",
+    "read_columns",
+    "scan",
+    "with_numbers",
+]
 
 FORMATS = (".csv", ".tsv", ".txt", ".xlsx", ".parquet")
 MOST_COLUMNS = 1000
 """Columns of a table of readings (judgement: more is another kind of file)."""
 Floats: TypeAlias = NDArray[np.float64]
 SEPARATORS = (";", "\t", ",")
+_BESIDE = "\0"  # behind a header: no header of a file has it
 _HEADER = re.compile(r"^\s*(?P<name>[^\[\]()]+?)\s*(?:[\[(](?P<unit>[^\[\]()]*)[\])])?\s*$")
 _SPREADS: dict[str, Shape] = {".u": "normal", ".half_width": "rectangular"}
 _COMMA, _POINT = r"^\s*[+\-−]?\d+,\d+\s*$", r"^\s*[+\-−]?\d*\.\d+(?:[eE][+-]?\d+)?\s*$"
@@ -255,13 +267,30 @@ def _decimal_comma(frame: pl.LazyFrame, fields: Sequence[Field]) -> bool:
     return bool(with_comma)
 
 
+def with_numbers(frame: pl.LazyFrame, layout: Layout) -> pl.LazyFrame:
+    """Return the table with the numbers of each quantity beside its cells, read by many hands at once."""
+    import polars as pl
+
+    schema = frame.collect_schema()
+    cells = [
+        pl.col(field.header).str.replace(",", ".", literal=True)
+        if layout.comma and schema[field.header] == pl.String
+        else pl.col(field.header)
+        for field in layout.quantities
+    ]
+    headers = [field.header + _BESIDE for field in layout.quantities]
+    return frame.with_columns(
+        cell.cast(pl.Float64, strict=False).alias(header) for cell, header in zip(cells, headers, strict=True)
+    )
+
+
 def read_columns(batch: pl.DataFrame, layout: Layout) -> tuple[dict[str, Column], dict[str, list[str]], NDArray[Any]]:
-    """Return the columns of a batch of rows [SI], its words, and a sentence for each row that cannot be read."""
+    """Return the columns of a batch of :func:`with_numbers` [SI], its words, and a sentence for each unreadable row."""
     faults = np.full(batch.height, "", dtype=object)
     values: dict[str, NDArray[Any]] = {}
     spreads: dict[str, tuple[NDArray[Any], Shape]] = {}
     for field in layout.quantities:
-        numbers, bad = _numbers(batch[field.header], layout.comma)
+        numbers, bad = _numbers(batch[field.header], batch[field.header + _BESIDE], layout.comma)
         for i in bad:
             text = quoted(str(batch[field.header][int(i)]))
             faults[i] = f"{field.header}: {text} is not a number."
@@ -292,13 +321,12 @@ def _word(text: Any) -> str:
     return "" if text is None else str(text).strip()
 
 
-def _numbers(column: pl.Series, comma: bool) -> tuple[Floats, list[int]]:
+def _numbers(column: pl.Series, cast: pl.Series, comma: bool) -> tuple[Floats, list[int]]:
     """Return the numbers of a column, NaN where a cell is empty, and the rows whose text is no number."""
     import polars as pl
 
-    text = column.str.replace(",", ".", literal=True) if comma and column.dtype == pl.String else column
-    cast = text.cast(pl.Float64, strict=False)
     if column.dtype == pl.String and cast.null_count() > column.null_count():  # blanks, another minus, or no number
+        text = column.str.replace(",", ".", literal=True) if comma else column
         text = text.str.strip_chars().str.replace("−", "-", literal=True)
         cast = text.cast(pl.Float64, strict=False)
         empty = (text.fill_null("") == "").to_numpy()

@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 from envcorr import units
 from envcorr.catalogue import CATALOGUE
 from envcorr.errors import Fault, InputError
-from envcorr.intake.table import FORMATS, Layout, layout_of, read_columns, scan
+from envcorr.intake.table import FORMATS, Layout, layout_of, read_columns, scan, with_numbers
 from envcorr.jobs.mass_table import BESIDE, BLOCK, Rows, RowSolver
 from envcorr.numerals import quoted
 from envcorr.propagation import coverage_factor
@@ -111,7 +111,7 @@ def convert(
 
     def blocks(*_: Any) -> Iterator[pl.DataFrame]:
         # in order and of one size, so that the same table gives the same bytes
-        for batch in frame.collect_batches(chunk_size=block, maintain_order=True):
+        for batch in with_numbers(frame, layout).collect_batches(chunk_size=block, maintain_order=True):
             yield _answer(batch, layout, solver, added, summary)
             if progress is not None:
                 progress(summary.rows, total)
@@ -143,7 +143,10 @@ def _answer(
     notes = pl.Series(_notes(found, failed, summary), dtype=pl.String)
     summary.rows += batch.height
     summary.assumed.update(found.assumed)
-    return batch.with_columns(*(series.alias(header) for header, series in zip(added, [*numbers, notes], strict=True)))
+    answered = batch.select(layout.headers)
+    return answered.with_columns(
+        *(series.alias(header) for header, series in zip(added, [*numbers, notes], strict=True))
+    )
 
 
 def _numbers(found: Rows, layout: Layout, summary: TableSummary, failed: NDArray[np.bool_]) -> list[Any]:

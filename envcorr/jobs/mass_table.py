@@ -38,7 +38,7 @@ from envcorr.setup import Setup
 
 __all__ = ["BESIDE", "BLOCK", "DIFFER", "RowSolver", "Rows"]
 
-BLOCK = 16_384
+BLOCK = 32_768
 """Rows that are solved at a time: their columns stay in the cache."""
 BESIDE = {"conventional mass": "load.conventional_mass", "volume": "load.volume"}
 """What can be told of each row beside the mass, where it is asked for."""
