@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Sequence
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -27,6 +28,8 @@ __all__ = ["TableSummary", "added_headers", "convert"]
 
 MOST_XLSX_ROWS = 1_048_575
 """Rows of a sheet less the headers (ECMA-376)."""
+READ_AHEAD = 8
+"""Blocks that are read at a time."""
 FEW_WHERE_DRAWN = 1024
 """Rows at a time where each is drawn, so that the progress shows."""
 _KINDS = {name: CATALOGUE.quantities[quantity].kind for name, quantity in BESIDE.items()}
@@ -110,8 +113,7 @@ def convert(
     block = max(1, min(BLOCK, FEW_WHERE_DRAWN)) if count else BLOCK
 
     def blocks(*_: Any) -> Iterator[pl.DataFrame]:
-        # in order and of one size, so that the same table gives the same bytes
-        for batch in with_numbers(frame, layout).collect_batches(chunk_size=block, maintain_order=True):
+        for batch in _blocks(with_numbers(frame, layout), total, block):
             yield _answer(batch, layout, solver, added, summary)
             if progress is not None:
                 progress(summary.rows, total)
@@ -121,6 +123,25 @@ def convert(
     with whole_file(target) as part:
         _write(answered, part, target.suffix.lower(), table.separator or ",", layout.comma, total)
     return summary
+
+
+def _blocks(frame: pl.LazyFrame, total: int, block: int) -> Iterator[pl.DataFrame]:
+    """Yield the rows in order and in blocks of one size, so that the same table gives the same bytes.
+
+    A few blocks are read ahead, never the whole table.
+    """
+    step = READ_AHEAD * block
+
+    def read(start: int) -> pl.DataFrame:
+        return frame.slice(start, step).collect(engine="streaming")
+
+    with ThreadPoolExecutor(1) as reader:
+        ahead = reader.submit(read, 0)
+        for start in range(0, total, step):
+            rows = ahead.result()
+            if start + step < total:
+                ahead = reader.submit(read, start + step)
+            yield from rows.iter_slices(block)
 
 
 def _answer(
