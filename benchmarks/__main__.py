@@ -5,7 +5,7 @@ from __future__ import annotations
 import importlib
 import sys
 
-NAMES = ("startup", "air", "room", "mass")
+NAMES = ("startup", "air", "room", "limits", "mass")
 
 
 def main(names: list[str]) -> int:

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from envcorr.cli_tools import emit_blocks, emit_json, json_option, record_options, recorder, set_option
+from envcorr.cli_tools import emit_blocks, emit_json, json_option, progress_bar, record_options, recorder, set_option
 
 if TYPE_CHECKING:
     from pathlib import Path
@@ -120,18 +120,9 @@ def mass(
 
 
 def _with_progress(table: Path, out: Path, setup: Setup, **how: Any) -> TableSummary:
-    from rich.console import Console
-    from rich.progress import BarColumn, MofNCompleteColumn, Progress, TimeRemainingColumn
-
     from envcorr.jobs.mass_file import convert
 
-    columns = ("rows", BarColumn(), MofNCompleteColumn(), TimeRemainingColumn())
-    with Progress(*columns, console=Console(stderr=True), transient=True) as bar:
-        task = bar.add_task("rows", total=None)
-
-        def progress(done: int, total: int) -> None:
-            bar.update(task, completed=done, total=total)
-
+    with progress_bar("rows") as progress:
         return convert(table, out, setup, progress=progress, **how)
 
 

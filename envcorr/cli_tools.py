@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import os
 import sys
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from contextlib import contextmanager
 from typing import TYPE_CHECKING, Any, TypeVar
 
 import click
@@ -18,6 +19,7 @@ __all__ = [
     "emit_blocks",
     "emit_json",
     "json_option",
+    "progress_bar",
     "record_options",
     "recorder",
     "set_option",
@@ -104,6 +106,18 @@ def air_options(function: Command) -> Command:
     for name, text in reversed(AIR_OPTIONS.items()):
         function = click.option(f"--{name.replace('_', '-')}", name, metavar="TEXT", help=text)(function)
     return function
+
+
+@contextmanager
+def progress_bar(what: str) -> Iterator[Callable[[int, int], None]]:
+    """Show a bar on the terminal's standard error while something long runs; told what is done, of how much."""
+    from rich.console import Console
+    from rich.progress import BarColumn, MofNCompleteColumn, Progress, TimeRemainingColumn
+
+    columns = (what, BarColumn(), MofNCompleteColumn(), TimeRemainingColumn())
+    with Progress(*columns, console=Console(stderr=True), transient=True) as bar:
+        task = bar.add_task(what, total=None)
+        yield lambda done, total: bar.update(task, completed=done, total=total)
 
 
 def emit_blocks(blocks: Sequence[Block]) -> None:

@@ -179,6 +179,7 @@ def _finish(
         unused=tuple(unused),
         checks=tuple(checks),
         targets=targets,
+        read=planner.read,
         decisions=tuple(planner.decisions.items()),
         _order=tuple(order),
         _reach=tuple(frozenset(r) for r in reach),

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Collection, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from functools import cached_property
 from typing import Any
@@ -183,6 +183,7 @@ class Plan:
     unused: tuple[str, ...]
     checks: tuple[PlannedCheck, ...]
     targets: Mapping[str, int]
+    read: bool
     decisions: tuple[tuple[OnlyIf, bool], ...]
     _order: tuple[int, ...] = field(repr=False)
     _reach: tuple[frozenset[int], ...] = field(repr=False)
@@ -208,6 +209,31 @@ class Plan:
                 values[i] = node.function(*[values[j] for j in node.inputs])
         return values
 
+    def evaluate_moved(self, leaf_values: Sequence[Value], *, base: Sequence[Any], moved: Collection[int]) -> list[Any]:
+        """Return the value of every node where some leaves are not as in ``base`` (an earlier result).
+
+        Best estimates that differ from those of ``base`` count too, see :meth:`renewed`; only what rests on either is
+        run again.
+        """
+        values = list(base)
+        stale: set[int] = set()
+        for i in self._order:
+            node = self.nodes[i]
+            if node.leaf >= 0:
+                if node.leaf not in moved:
+                    continue
+                values[i] = leaf_values[node.leaf]
+            elif node.function is None:
+                if node.best_of < 0 or values[i] == node.centre:
+                    continue
+                values[i] = node.centre
+            elif stale.isdisjoint(node.inputs):
+                continue
+            else:
+                values[i] = node.function(*[values[j] for j in node.inputs])
+            stale.add(i)
+        return values
+
     def renewed(self, setup: Setup) -> Plan | None:
         """Return the same plan for a set-up that gives the same entries with other numbers, without planning anew.
 
@@ -216,7 +242,7 @@ class Plan:
         before, now = self.setup, setup.estimates
         if setup.choices != before.choices or now.keys() != before.estimates.keys():
             return None
-        if any(now[name].is_exact != estimate.is_exact for name, estimate in before.estimates.items()):
+        if self.read and any(now[name].is_exact != known.is_exact for name, known in before.estimates.items()):
             return None
         centres = {name: estimate.centre for name, estimate in now.items()}
         if any(only_if(centres) != answer for only_if, answer in self.decisions):

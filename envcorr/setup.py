@@ -25,13 +25,15 @@ class Setup:
 
     The names are those of the vocabulary, with ``tare.`` or ``adjusted.`` in front for another moment; the error of
     the sensor for ``air.pressure`` is ``sensors.air.pressure``. ``waived`` lists effects that the user takes upon
-    themselves; ``written`` holds the text that each entry was read from, for the echo.
+    themselves, ``improvable`` the quantities that the room can better; ``written`` holds the text that each entry was
+    read from, for the echo.
     """
 
     estimates: Mapping[str, Estimate] = field(default_factory=dict)
     choices: Mapping[str, str] = field(default_factory=dict)
     correlations: tuple[Correlation, ...] = ()
     waived: frozenset[str] = frozenset()
+    improvable: tuple[str, ...] = ()
     title: str = ""
     written: Mapping[str, str] = field(default_factory=dict)
 

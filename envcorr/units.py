@@ -33,6 +33,7 @@ __all__ = [
     "from_unit",
     "parse",
     "parse_spread",
+    "rounded_down",
     "show",
     "spread_kind",
     "to_unit",
@@ -245,6 +246,16 @@ def show(value: float, kind: str, digits: int = 4, *, unit: str = "") -> str:
     unit = unit or _fitting_unit(value, KINDS[kind], digits)
     text = plain(float(to_unit(value, kind, unit)), digits)
     return f"{text}{unit}" if unit == "°" else f"{text} {unit}".rstrip()
+
+
+def rounded_down(value: float, kind: str, digits: int = 3) -> float:
+    """Return the SI value of a size rounded towards nothing to some significant digits of the unit it is shown in."""
+    unit = _fitting_unit(value, KINDS[kind], digits)
+    size = float(to_unit(value, kind, unit))
+    if not size or not math.isfinite(size):
+        return value
+    step = Fraction(10) ** (math.floor(math.log10(abs(size))) - digits + 1)
+    return float(from_unit(float(math.floor(Fraction(abs(size)) / step) * step), kind, unit)) * math.copysign(1, size)
 
 
 def _fitting_unit(value: float, kind: Kind, digits: int) -> str:

@@ -32,6 +32,10 @@ PRESENT: Moment = ""
 MOMENTS: tuple[Moment, ...] = (PRESENT, "tare", "adjusted")
 
 Varies = Literal["each reading", "each weighing", "never"]
+_HARMLESS_AT_ZERO = frozenset(
+    {"angle", "charge", "electric field", "potential", "surface charge", "temperature difference", "mass rate"}
+)
+"""Kinds of quantities of which nothing at all is best."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,6 +56,8 @@ class Quantity:
     quantity (a formula's own error, a unit of noise) is drawn, never given. A ``computed`` one may be given but usually
     follows from others, so those are asked for where it is lacking. ``example`` is a text
     that it could be given by. One that is not ``ranked`` has no best estimate worth knowing (the side a coin falls on).
+    One that is ``harmless_at_zero`` (a charge, a tilt, a repeatability) is bettered by being smaller, any other by
+    being held or known better.
     """
 
     name: str
@@ -69,6 +75,12 @@ class Quantity:
     computed: bool = False
     example: str = ""
     ranked: bool = True
+    lessens_to_zero: bool = False
+
+    @property
+    def harmless_at_zero(self) -> bool:
+        """Whether nothing at all is best."""
+        return self.limit or self.lessens_to_zero or self.kind in _HARMLESS_AT_ZERO
 
     @property
     def parameter(self) -> str:
@@ -294,6 +306,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         low=0.0,
         high=1.0,
         varies="never",
+        lessens_to_zero=True,
         example="0.1 mg",
     ),
     Quantity(
@@ -303,6 +316,7 @@ QUANTITIES: tuple[Quantity, ...] = (
         "Standard deviation of net weighings with a disturbance (hood, fan, pump) switched on.",
         low=0.0,
         varies="never",
+        lessens_to_zero=True,
     ),
     Quantity(
         "balance.scatter_off",

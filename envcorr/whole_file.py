@@ -2,15 +2,17 @@
 
 from __future__ import annotations
 
+import csv
 import os
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterable, Iterator, Sequence
 from contextlib import contextmanager
 from pathlib import Path
+from typing import Any
 
 from envcorr.errors import Fault, InputError
 from envcorr.numerals import quoted
 
-__all__ = ["check_target", "whole_file"]
+__all__ = ["check_target", "whole_file", "write_csv"]
 
 
 def check_target(target: Path, *, endings: Sequence[str], force: bool, inputs: Sequence[Path] = ()) -> None:
@@ -33,6 +35,14 @@ def check_target(target: Path, *, endings: Sequence[str], force: bool, inputs: S
             raise fault("is the input itself.", "Give another name: the input is never replaced.")
     if target.exists() and not force:
         raise fault("is already there.", "Give another name, or --force to replace it.")
+
+
+def write_csv(target: Path, headers: Sequence[str], rows: Iterable[Sequence[Any]]) -> None:
+    """Write a table whole, a comma between its cells (RFC 4180); None is an empty cell."""
+    with whole_file(target) as part, part.open("w", encoding="utf-8", newline="") as file:
+        writer = csv.writer(file)
+        writer.writerow(headers)
+        writer.writerows(rows)
 
 
 @contextmanager

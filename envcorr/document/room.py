@@ -17,7 +17,8 @@ from envcorr.document.room_basis import (
     total_words,
     totals,
 )
-from envcorr.document.wording import MassScale, assumed, capital, mass, notices, percent, share, unused
+from envcorr.document.scene import scene
+from envcorr.document.wording import MassScale, assumed, capital, notices, percent, share, unused
 from envcorr.jobs.room import EffectRow, RoomResult
 from envcorr.jobs.weighings import STATES
 
@@ -38,7 +39,7 @@ def document(result: RoomResult) -> list[Block]:
     """Return the page of a room check."""
     scale = MassScale.fitting(result.resolution, (result.total(state).whole.summary.largest for state in STATES))
     return [
-        *_scene(result),
+        *scene(result.plan, result.resolution, "Room check"),
         _verdict(result, scale),
         *_first_to_improve(result, scale),
         *_corrections(result, scale),
@@ -57,29 +58,6 @@ def document(result: RoomResult) -> list[Block]:
 
 
 # What is asked, and the answer -----------------------------------------------------------------------------
-
-
-def _scene(result: RoomResult) -> list[Block]:
-    given = result.setup.estimates
-    named = result.plan.catalogue.quantities
-
-    def said(*names: str) -> str:
-        found = (name for name in names if name in given)
-        return ", ".join(units.show(float(given[n].centre), named[n].kind, 6) for n in found)
-
-    air = said("air.temperature", "air.pressure", "air.humidity", "air.density")
-    parts = [f"Load {said('load.mass', 'load.density', 'load.volume')}"]
-    if container := said("container.mass"):
-        parts.append(f"container {container}")
-    if air:
-        parts.append(f"air {air}")
-    if (repeats := said("cycle.repeats")) not in ("", "1"):
-        parts.append(f"the result is the mean of {repeats} weighings")
-    meaning = result.plan.catalogue.choices["target.measurand"].options[result.measurand]
-    return [
-        Heading(result.setup.title or "Room check", level=1),
-        Text(f"{'; '.join(parts)}. Target: {mass(result.resolution)} in {meaning}."),
-    ]
 
 
 def _verdict(result: RoomResult, scale: MassScale) -> Verdict:

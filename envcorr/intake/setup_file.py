@@ -68,6 +68,7 @@ def parse_setup(
         choices=reader.choices,
         correlations=tuple(reader.correlations),
         waived=frozenset(reader.waived),
+        improvable=tuple(dict.fromkeys(reader.improvable)),
         title=reader.title,
         written=reader.written,
     )
@@ -83,6 +84,7 @@ class _Reader:
         self.choices: dict[str, str] = {}
         self.correlations: list[Correlation] = []
         self.waived: list[str] = []
+        self.improvable: list[str] = []
         self.materials: dict[str, Any] = {}
         self.written: dict[str, str] = {}
         self.title = ""
@@ -108,8 +110,8 @@ class _Reader:
                 self._no_entry(key, value)
 
     def _entry(self, name: str, raw: Any) -> None:
-        if name == "target.waived":
-            self._waived(raw)
+        if name in ("target.waived", "target.improvable"):
+            self._names(name, raw)
             return
         if name in materials.NAMED_BY:
             self.materials[name] = raw
@@ -147,15 +149,17 @@ class _Reader:
         hint = f'Did you mean "{near}"? ' if near else ""
         self.fault(choice.name, f"{shown(raw)} is not one of its words.", f"{hint}Known are {known}.")
 
-    def _waived(self, raw: Any) -> None:
-        names = raw if isinstance(raw, list) else [raw]
-        for name in names:
-            if isinstance(name, str) and name in CATALOGUE.effects:
-                self.waived.append(name)
+    def _names(self, where: str, raw: Any) -> None:
+        """Read the effects that are waived, or the quantities that the room can better."""
+        effects = where == "target.waived"
+        known = list(CATALOGUE.effects) if effects else CATALOGUE.words()
+        for name in raw if isinstance(raw, list) else [raw]:
+            if isinstance(name, str) and (name in known or (not effects and CATALOGUE.find(_full_name(name)))):
+                (self.waived if effects else self.improvable).append(name if effects else _full_name(name))
                 continue
-            near = nearest(str(name), CATALOGUE.effects)
-            hint = f"Did you mean {near}?" if near else f"Known are {', '.join(CATALOGUE.effects)}."
-            self.fault("target.waived", f"{shown(name)} is not an effect.", hint)
+            near = nearest(str(name), known)
+            hint = f"Did you mean {near}?" if near else f"Known are {', '.join(known)}."
+            self.fault(where, f"{shown(name)} is not {'an effect' if effects else 'a quantity'}.", hint)
 
     def _no_entry(self, name: str, raw: Any) -> None:
         if name in _sections():
@@ -166,7 +170,7 @@ class _Reader:
     def _unknown(self, name: str) -> None:
         head = next((head for head in _HEADS if head and name.startswith(head)), "")
         rest = name.removeprefix(head)
-        words = [*CATALOGUE.words(), "target.waived", "title", "correlation"]
+        words = [*CATALOGUE.words(), "target.waived", "target.improvable", "title", "correlation"]
         keys = {word.rpartition(".")[2]: word for word in reversed(words)}
         last = rest.rpartition(".")[2]
         near = nearest(rest, words) or keys.get(last) or keys.get(nearest(last, keys), "")

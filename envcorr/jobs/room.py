@@ -15,11 +15,11 @@ from typing import Any
 
 import numpy as np
 
-from envcorr.errors import Fault, InputError, Notice
+from envcorr.errors import Notice
 from envcorr.estimate import Estimate, Value
 from envcorr.jobs.common import correlation_matrix, notices, usual_range_notices
 from envcorr.jobs.minimum_weight import MinimumWeight, minimum_weight
-from envcorr.jobs.verdict import Figures, Target, Total, Verdict, figures, give_verdict, judge
+from envcorr.jobs.verdict import Figures, Target, Total, Verdict, figures, give_verdict, judge, target_of
 from envcorr.jobs.weighings import STATES, Run, Scope, State, Weighings, run_weighings, scope_of
 from envcorr.model import make_plan
 from envcorr.plan import Assumption, NotAssessed, Plan, PlannedEffect
@@ -168,7 +168,7 @@ def check_room(
     Raises :class:`InputError` where the mass or the target resolution is not given.
     """
     plan = make_plan(setup)
-    target, accuracy = _target(plan)
+    target, accuracy = target_of(plan)
     repeats = setup.estimates.get("cycle.repeats", Estimate(1.0))
     correlation = correlation_matrix(plan)
     run = run_weighings(
@@ -221,20 +221,6 @@ def check_room(
         draws=run.drawn.size,
         seed=seed,
     )
-
-
-def _target(plan: Plan) -> tuple[Target, float]:
-    """Return what is demanded, and the demanded relative accuracy."""
-    if "target.resolution" not in plan.targets:
-        remedy = 'Write, for example, [target] resolution = "0.1 mg".'
-        raise InputError([Fault("target.resolution", "is not given.", remedy)])
-    centres = plan.centres()
-    resolution, within, probability, accuracy = (
-        float(centres[plan.targets[f"target.{name}"]])
-        for name in ("resolution", "within", "probability", "relative_accuracy")
-    )
-    measurand = plan.setup.choices.get("target.measurand", "mass")
-    return Target(resolution, within, probability, measurand), accuracy
 
 
 def _totals(run: Run, target: Target) -> dict[State, Total]:

@@ -11,8 +11,10 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Literal
 
+from envcorr.errors import Fault, InputError
 from envcorr.estimate import Value
 from envcorr.jobs.weighings import STATES, Run, Scope, State, scope_of
+from envcorr.plan import Plan
 from envcorr.propagation import Summary, largest_with, share_within, summary
 from envcorr.setup import Setup
 
@@ -26,6 +28,7 @@ __all__ = [
     "give_verdict",
     "is_needed",
     "judge",
+    "target_of",
     "treatments",
 ]
 
@@ -93,6 +96,20 @@ class Verdict:
     limited_by_balance: bool = False
     treat: tuple[str, ...] = ()
     """The effects to be treated, the largest first, for the total to pass."""
+
+
+def target_of(plan: Plan) -> tuple[Target, float]:
+    """Return what is demanded, and the demanded relative accuracy."""
+    if "target.resolution" not in plan.targets:
+        remedy = 'Write, for example, [target] resolution = "0.1 mg".'
+        raise InputError([Fault("target.resolution", "is not given.", remedy)])
+    centres = plan.centres()
+    resolution, within, probability, accuracy = (
+        float(centres[plan.targets[f"target.{name}"]])
+        for name in ("resolution", "within", "probability", "relative_accuracy")
+    )
+    measurand = plan.setup.choices.get("target.measurand", "mass")
+    return Target(resolution, within, probability, measurand), accuracy
 
 
 def _both(first: bool | None, second: bool | None) -> bool | None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import copy
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from functools import cached_property
@@ -38,6 +39,8 @@ __all__ = [
 State = Literal["as_read", "corrected", "treated"]
 Scope = Literal["surroundings", "whole"]
 STATES: tuple[State, ...] = ("as_read", "corrected", "treated")
+CACHED = ("first", "some", "result", "again", "some_again", "some_result", "_some_redrawn", "_some_bases")
+"""What a run works out when it is first asked for."""
 FEW_BATCHES = 4
 """Batches of draws on which effects and quantities are ranked, and the minimum weight is found."""
 
@@ -106,18 +109,47 @@ class Run:
     ) -> None:
         keep_freed_memory()
         self.plan, self.drawn, self.repeats, self.difference = plan, drawn, repeats, difference
-        self.leaf_values = [
-            inside_physics(value, leaf)
-            for value, leaf in zip(
-                drawn.place_all([leaf.estimate for leaf in plan.leaves], correlation), plan.leaves, strict=True
-            )
-        ]
+        self.tied = drawn.tied(correlation)
+        self.leaf_values = [self.place(row, leaf) for row, leaf in enumerate(plan.leaves)]
         self.base = plan.evaluate(self.leaf_values)
-        self.first = Weighings(plan, (self.base,))
-        self.some = Weighings(plan, (few(self.base),))
-        again = range(repeats, 2 * repeats)
-        numbers = (*range(repeats), *again) if difference else range(repeats)
-        self._some_leaves = {k: few(self._redraw(k)) for k in {*numbers, *again}}
+        self._orders: dict[int, Any] = {}
+        self._drawn_again: dict[int, tuple[list[Value], list[Any]]] = {}
+
+    def place(self, row: int, leaf: Leaf) -> Value:
+        """Return the draws of a leaf by a row of the uniform ones."""
+        return inside_physics(self.tied.place(row, leaf.estimate), leaf)
+
+    def moved(self, plan: Plan) -> Run:
+        """Return the weighings of the same plan with other estimates (:meth:`Plan.renewed`), on the same draws."""
+        other = copy.copy(self)
+        for name in CACHED:
+            other.__dict__.pop(name, None)
+        rows = [j for j, leaf in enumerate(plan.leaves) if leaf.estimate is not self.plan.leaves[j].estimate]
+        other.plan, other.leaf_values = plan, list(self.leaf_values)
+        for row in rows:
+            other.leaf_values[row] = self.place(row, plan.leaves[row])
+        other.base = plan.evaluate_moved(other.leaf_values, base=self.base, moved=rows)
+        numbers = range(1, 2 * self.repeats if self.difference else self.repeats)
+        other._drawn_again = {k: other._moved_again(self._again_by(k), k, rows) for k in numbers}
+        return other
+
+    def _moved_again(
+        self, before: tuple[list[Value], list[Any]], number: int, rows: Sequence[int]
+    ) -> tuple[list[Value], list[Any]]:
+        leaf_values, base = list(before[0]), before[1]
+        for row in rows:
+            leaf_values[row] = self._reordered(row, number)
+        return leaf_values, self.plan.evaluate_moved(leaf_values, base=base, moved=rows)
+
+    @cached_property
+    def first(self) -> Weighings:
+        """A single weighing, on all draws."""
+        return Weighings(self.plan, (self.base,))
+
+    @cached_property
+    def some(self) -> Weighings:
+        """The same on a few of the draws."""
+        return Weighings(self.plan, (few(self.base),))
 
     @cached_property
     def result(self) -> Weighings:
@@ -148,13 +180,17 @@ class Run:
         return Weighings(self.plan, sets, less)
 
     @cached_property
+    def _some_redrawn(self) -> dict[int, list[Any]]:
+        return {k: few(self._redraw(k)) for k in range(2 * self.repeats)}
+
+    @cached_property
     def _some_bases(self) -> dict[int, list[Any]]:
-        found = {k: self.plan.evaluate(leaves) for k, leaves in self._some_leaves.items() if k}
+        found = {k: self.plan.evaluate(leaves) for k, leaves in self._some_redrawn.items() if k}
         return {0: self.some.sets[0], **found}
 
     def _some_sets(self, numbers: Sequence[int], rows: Sequence[int]) -> Iterator[list[Any]]:
         for k in numbers:
-            leaf_values, values = list(self._some_leaves[k]), self._some_bases[k]
+            leaf_values, values = list(self._some_redrawn[k]), self._some_bases[k]
             for row in rows:
                 leaf_values[row] = self.plan.leaves[row].estimate.centre
                 values = self.plan.evaluate(leaf_values, base=values, changed=row)
@@ -163,20 +199,32 @@ class Run:
     @property
     def some_leaves(self) -> list[Value]:
         """The leaves of :attr:`some`."""
-        return self._some_leaves[0]
+        return self._some_redrawn[0]
 
     def _redrawn(self, number: int) -> list[Any]:
-        return self.plan.evaluate(self._redraw(number)) if number else self.base
+        return self._again_by(number)[1] if number else self.base
+
+    def _again_by(self, number: int) -> tuple[list[Value], list[Any]]:
+        """Return the leaves and the nodes of another weighing, worked out once."""
+        if number not in self._drawn_again:
+            leaf_values = self._redraw(number)
+            self._drawn_again[number] = leaf_values, self.plan.evaluate(leaf_values)
+        return self._drawn_again[number]
 
     def _redraw(self, number: int) -> list[Value]:
         """Return the leaves in another order where they vary, so that they are independent of the first."""
-        if number == 0:
-            return self.leaf_values
-        order = self.drawn.shuffled(number)
-        return [
-            value[order] if isinstance(value, np.ndarray) and leaf.varies != "never" else value
-            for value, leaf in zip(self.leaf_values, self.plan.leaves, strict=True)
-        ]
+        return [self._reordered(row, number) for row in range(len(self.plan.leaves))] if number else self.leaf_values
+
+    def _reordered(self, row: int, number: int) -> Value:
+        value = self.leaf_values[row]
+        if isinstance(value, np.ndarray) and self.plan.leaves[row].varies != "never":
+            return value[self._order(number)]
+        return value
+
+    def _order(self, number: int) -> Any:
+        if number not in self._orders:
+            self._orders[number] = self.drawn.shuffled(number)
+        return self._orders[number]
 
     def ratio(self, state: State, chosen: Sequence[int], probability: float) -> float:
         """Return the e95 of all draws over that of a few: on common draws it is steadier than either."""

@@ -124,6 +124,8 @@ def _inputs(setup: Setup, kinds: Mapping[str, tuple[str, bool]]) -> dict[str, An
     found.update(setup.choices)
     if setup.waived:
         found["target.waived"] = sorted(setup.waived)
+    if setup.improvable:
+        found["target.improvable"] = list(setup.improvable)
     if setup.correlations:
         found["correlation"] = [
             {"between": [one.first, one.second], "coefficient": one.coefficient} for one in setup.correlations
