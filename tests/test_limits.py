@@ -282,11 +282,12 @@ def test_command(tmp_path):
     shown = CliRunner().invoke(cli, arguments)
     assert shown.exit_code == 0, shown.stderr
     assert "NOT REACHED" in shown.stdout
-    assert "42.4 % of now" in shown.stdout
+    assert "% of now" in shown.stdout
     answer = json.loads(CliRunner().invoke(cli, [*arguments, "--json", f"--out={tmp_path / 'a.csv'}"]).stdout)["result"]
     by_name = {one["name"]: one for one in answer["limits"]}
     coefficient = by_name["balance.sensitivity_temperature_coefficient"]
     assert coefficient["answer"] == "must become"
+    assert coefficient["factor"] == pytest.approx(0.42, abs=0.02)  # as other runs of the room check find it
     assert coefficient["probability_outside"] < 0.95 <= coefficient["probability_inside"]
     with (tmp_path / "a.csv").open(encoding="utf-8", newline="") as file:
         rows = {row["name"]: row for row in csv.DictReader(file)}
