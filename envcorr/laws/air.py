@@ -32,6 +32,7 @@ __all__ = [
     "outside_cipm_range",
     "outside_oiml_range",
     "saturation_vapour_pressure",
+    "vapour_density",
     "vapour_fraction_from_dew_point",
     "vapour_fraction_from_humidity",
     "vapour_fraction_from_wet_bulb",
@@ -93,6 +94,11 @@ def vapour_fraction_from_wet_bulb(temperature: Value, pressure: Value, wet_bulb:
     depression = temperature - wet_bulb
     coefficient = 6.53e-4 * (1 + 9.44e-4 * (wet_bulb - _T0))  # 1/K
     return vapour_fraction_from_dew_point(pressure, wet_bulb) - coefficient * depression
+
+
+def vapour_density(temperature: Value, pressure: Value, vapour_fraction: Value) -> Value:
+    """Return the mass of water vapour in a volume of air [kg/m³], an ideal gas: xv p Mv/(R T)."""
+    return vapour_fraction * pressure * _MOLAR_MASS_WATER / (_R * temperature)
 
 
 def humidity_from_vapour_fraction(temperature: Value, pressure: Value, vapour_fraction: Value) -> Value:
