@@ -97,6 +97,16 @@ warmer_by = { value = "1 K", half_width = "0.5 K" }
 height = "40 mm"
 diameter = "3 cm"
 insulating = true
+kept_at_humidity = "30 %"
+isotherm_slope = { value = 0.02, u = 0.005 }
+uptake_time = "10 min"
+handled_by = "bare fingers"
+touches = 2
+
+[film]
+area = "80 cm²"
+surface = "glass"
+humidity_change = "2 %"
 
 [container]
 mass = "8 g"
