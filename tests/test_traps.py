@@ -1,6 +1,9 @@
 """The traps of the bench: each is said in one sentence where it is stepped into, and not a word where all is well."""
 
+import re
+
 import pytest
+from CoolProp.CoolProp import HAPropsSI
 
 from envcorr.errors import InputError
 from envcorr.intake.setup_file import parse_setup
@@ -387,3 +390,26 @@ def test_minimum_weight_applies_to_the_net_mass():
     assert "net mass (20 mg)" in sentence
     assert "gross load" in sentence
     unsaid(told({"container": FLASK, "load": {"mass": "40 mg"}}), "minimum weight")
+
+
+# 20: a cold load below the dew point ---------------------------------------------------------------------------------
+
+
+def test_a_cold_load_below_the_dew_point():
+    """21.4 °C and 42 %: the dew point is 8.0 °C (CoolProp's humid air at 943.1 hPa); a load at 4.4 °C gathers water."""
+    cold = {"load": {"warmer_by": "-17 K"}}
+    sentence = said(told(cold), "below the dew point")
+    assert "4.4 °C" in sentence
+    dew_point = HAPropsSI("D", "T", 273.15 + 21.4, "P", 94310, "R", 0.42) - 273.15
+    assert float(re.search(r"dew point .*?([0-9.]+) °C", sentence)[1]) == pytest.approx(dew_point, abs=0.02)
+    assert "Let it warm up closed" in sentence
+    said(told({**cold, "cycle": {"duration": "1 min"}}), "below the dew point")  # once, assessed or not
+    unsaid(told({"load": {"warmer_by": "-12 K"}}), "dew point")
+    unsaid(told({"load": {"warmer_by": "17 K"}}), "dew point")
+    unsaid(told({"air": {"humidity": "20 %"}, "load": {"warmer_by": "-17 K"}}), "dew point")
+
+
+def test_the_container_is_cold():
+    vessel = {"mass": "20 g", "density": "2500 kg/m³", "warmer_by": "-17 K"}
+    said(told({"container": vessel}), "below the dew point", "4.4 °C")
+    unsaid(told({"container": {**vessel, "warmer_by": "0 K"}}), "dew point")
