@@ -7,6 +7,7 @@ from collections import defaultdict
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 
+from envcorr import units
 from envcorr.choices import CHOICES
 from envcorr.derived import QUANTITIES as DERIVED
 from envcorr.derived import WAYS
@@ -27,6 +28,11 @@ class Place:
     moment: Moment
     quantity: Quantity
     sensor: bool = False
+
+    @property
+    def kind(self) -> str:
+        """The kind of its units; the error of a sensor is a difference."""
+        return units.spread_kind(self.quantity.kind) if self.sensor else self.quantity.kind
 
     @property
     def name(self) -> str:

@@ -17,7 +17,17 @@ import envcorr
 from envcorr.cli_limits import limits
 from envcorr.cli_mass import mass
 from envcorr.cli_record import record
-from envcorr.cli_tools import air_options, emit_blocks, emit_json, json_option, record_options, recorder, set_option
+from envcorr.cli_tools import (
+    air_options,
+    emit_blocks,
+    emit_json,
+    json_option,
+    record_options,
+    recorder,
+    report_option,
+    reporter,
+    set_option,
+)
 
 __all__ = ["cli", "main"]
 
@@ -111,7 +121,8 @@ def air(setup: str | None, changes: Sequence[str], as_json: bool, **given: str |
 @click.option("--draws", type=click.IntRange(1, 2**20), help="Number of Monte Carlo draws (at least 16384).")
 @click.option("--seed", type=click.IntRange(min=0), default=0, show_default=True, help="Of the draws.")
 @record_options
-@click.option("--force", is_flag=True, help="Replace the record where it is already there.")
+@report_option
+@click.option("--force", is_flag=True, help="Replace the record or the report where it is already there.")
 @json_option
 @click.pass_context
 def room(
@@ -124,6 +135,7 @@ def room(
     seed: int,
     record_file: str | None,
     notes: Sequence[str],
+    report_file: str | None,
     force: bool,
     as_json: bool,
 ) -> None:
@@ -136,16 +148,19 @@ def room(
     written = read_mapping(setup)
     read = parse_setup(written, changes=changes, what=setup)
     keep = recorder(record_file, notes, force=force, set_up=written, changes=changes)
+    report = reporter(report_file, force=force, inputs=[setup])
     how: dict[str, Any] = {"draws": draws, "seed": seed, "as_read": as_read}
     result = check_room(read, **how)
     answer = json.room(result)
+    from envcorr.document import room as page
+
+    blocks = page.document(result)
     keep("room", how, answer)
+    report(blocks, result.plan)
     if as_json:
         emit_json(answer)
     else:
-        from envcorr.document import room as page
-
-        emit_blocks(page.document(result))
+        emit_blocks(blocks)
     if strict and result.verdict.answer in STRICT_ANSWERS:
         ctx.exit(3)
 

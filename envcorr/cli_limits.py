@@ -6,7 +6,7 @@ from collections.abc import Sequence
 
 import click
 
-from envcorr.cli_tools import emit_blocks, emit_json, json_option, progress_bar, set_option
+from envcorr.cli_tools import emit_blocks, emit_json, json_option, progress_bar, report_option, reporter, set_option
 
 __all__ = ["limits"]
 
@@ -20,7 +20,8 @@ __all__ = ["limits"]
 @click.option("--draws", type=click.IntRange(1, 2**18), help="Number of Monte Carlo draws (16384 if not said).")
 @click.option("--seed", type=click.IntRange(min=0), default=0, show_default=True, help="Of the draws.")
 @click.option("--out", metavar="FILE.csv", help="Write the limits as a table, too.")
-@click.option("--force", is_flag=True, help="Replace FILE where it is already there.")
+@report_option
+@click.option("--force", is_flag=True, help="Replace a file where it is already there.")
 @json_option
 def limits(
     setup: str,
@@ -31,6 +32,7 @@ def limits(
     draws: int | None,
     seed: int,
     out: str | None,
+    report_file: str | None,
     force: bool,
     as_json: bool,
 ) -> None:
@@ -49,6 +51,7 @@ def limits(
         raise click.UsageError("--as-read and --treated are two different totals: choose one.")
     if out is not None:
         check_target(Path(out), endings=(".csv",), force=force, inputs=[Path(setup)])
+    report = reporter(report_file, force=force, inputs=[setup])
     read = read_setup(setup, changes=changes)
     with progress_bar("limits") as progress:
         result = find_limits(
@@ -59,8 +62,11 @@ def limits(
             seed=seed,
             progress=progress,
         )
+    from envcorr.document import limits as page
     from envcorr.render import json_limits
 
+    blocks = page.document(result)
+    report(blocks, result.plan)
     if out is not None:
         from envcorr.whole_file import write_csv
 
@@ -68,6 +74,4 @@ def limits(
     if as_json:
         emit_json(json_limits.limits(result))
     else:
-        from envcorr.document import limits as page
-
-        emit_blocks(page.document(result))
+        emit_blocks(blocks)

@@ -7,7 +7,17 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from envcorr.cli_tools import emit_blocks, emit_json, json_option, progress_bar, record_options, recorder, set_option
+from envcorr.cli_tools import (
+    emit_blocks,
+    emit_json,
+    json_option,
+    progress_bar,
+    record_options,
+    recorder,
+    report_option,
+    reporter,
+    set_option,
+)
 
 if TYPE_CHECKING:
     from pathlib import Path
@@ -53,6 +63,7 @@ OPTIONS = {
 @click.option("--also", multiple=True, type=click.Choice(tuple(ALSO)), help="Tell that of each row too, as columns.")
 @click.option("--seed", type=click.IntRange(min=0), default=0, show_default=True, help="Of the draws.")
 @record_options
+@report_option
 @json_option
 def mass(
     table: str | None,
@@ -68,6 +79,7 @@ def mass(
     seed: int,
     record_file: str | None,
     notes: Sequence[str],
+    report_file: str | None,
     as_json: bool,
     **given: str | None,
 ) -> None:
@@ -88,6 +100,8 @@ def mass(
         raise click.UsageError("--draws needs --monte-carlo.")
     if table is None and (out or mapped or also):
         raise click.UsageError("--out, --column and --also are for a TABLE.")
+    if table is not None and report_file is not None:
+        raise click.UsageError("--report is for one reading; a table is its own report.")
     if table is not None and out is None:
         raise click.UsageError("A table needs --out FILE.")
     every = [*(f"{OPTIONS[name][0]}={text}" for name, text in given.items() if text is not None), *changes]
@@ -96,16 +110,18 @@ def mass(
     count = (draws or (2**14 if table is None else 2**12)) if monte_carlo else 0
     how: dict[str, Any] = {"probability": coverage_probability(probability), "count": count, "seed": seed}
     keep = recorder(record_file, notes, force=force, set_up=written, changes=every)
+    report = reporter(report_file, force=force, inputs=[setup] if setup else ())
     if table is None or out is None:
+        from envcorr.document import mass as page
+
         result = find_mass(read, **how)
-        answer = json_mass.mass(result)
+        answer, blocks = json_mass.mass(result), page.document(result)
         keep("mass", how, answer)
+        report(blocks, result.plan)
         if as_json:
             emit_json(answer)
         else:
-            from envcorr.document import mass as page
-
-            emit_blocks(page.document(result))
+            emit_blocks(blocks)
         return
     how |= {"mapped": list(mapped), "beside": [ALSO[word] for word in also]}
     summary = _with_progress(Path(table), Path(out), read, force=force, **how)

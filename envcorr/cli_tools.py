@@ -12,6 +12,7 @@ import click
 
 if TYPE_CHECKING:
     from envcorr.document.blocks import Block
+    from envcorr.plan import Plan
 
 __all__ = [
     "AIR_OPTIONS",
@@ -22,6 +23,8 @@ __all__ = [
     "progress_bar",
     "record_options",
     "recorder",
+    "report_option",
+    "reporter",
     "set_option",
 ]
 
@@ -69,6 +72,35 @@ def record_options(function: Command) -> Command:
     return click.option(
         "--record", "record_file", metavar="FILE.json", help="Write down all that the answer was computed from and by."
     )(function)
+
+
+def report_option(function: Command) -> Command:
+    """Add --report."""
+    text = "Write the page as a report to file, HTML or PDF by its ending, with inputs, methods and room to sign."
+    return click.option("--report", "report_file", metavar="FILE", help=text)(function)
+
+
+def reporter(file: str | None, *, force: bool, inputs: Sequence[str] = ()) -> Callable[[Sequence[Block], Plan], None]:
+    """Return what writes a page as a report; the file's name is looked at before anything is computed."""
+    from pathlib import Path
+
+    if file is None:
+        return lambda page, plan: None
+    from envcorr.whole_file import check_target, whole_file
+
+    path = Path(file)
+    check_target(path, endings=(".html", ".pdf"), force=force, inputs=[Path(one) for one in inputs])
+
+    def write(page: Sequence[Block], plan: Plan) -> None:
+        from envcorr.document.report import report
+        from envcorr.render import html, pdf
+
+        blocks = report(page, plan)
+        data = pdf.render(blocks) if path.suffix.lower() == ".pdf" else html.render(blocks).encode()
+        with whole_file(path) as part:
+            part.write_bytes(data)
+
+    return write
 
 
 def recorder(

@@ -32,7 +32,8 @@ class Check:
 
     ``function`` takes quantities and returns True where there is something to say; ``sentence`` may name those
     quantities in braces, ``{air_temperature}`` being printed with its unit. On draws the notice carries a share.
-    ``only_if`` sees the best estimates that were given (name to SI value) and may decline.
+    ``only_if`` sees the best estimates that were given (name to SI value) and may decline; ``unless_chosen`` names a
+    choice that, where it was made, leaves nothing to say.
     """
 
     function: Function
@@ -40,6 +41,7 @@ class Check:
     source: str = ""
     level: str = "warning"
     only_if: OnlyIf | None = None
+    unless_chosen: str = ""
 
 
 @dataclass(frozen=True, slots=True)

@@ -352,7 +352,7 @@ class Planner:
 
     def check(self, check: Check, where: str, moment: Moment = PRESENT) -> PlannedCheck | None:
         """Return the check with the nodes of its parameters, or None where one is lacking."""
-        if not self.allows(check.only_if):
+        if not self.allows(check.only_if) or check.unless_chosen in self.setup.choices:
             return None
         inputs = self.inputs(check.function, moment)
         if inputs is None:

@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+import hashlib
+import json
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
+from typing import Any
 
 from envcorr.estimate import Estimate
 
@@ -36,6 +39,13 @@ class Setup:
     improvable: tuple[str, ...] = ()
     title: str = ""
     written: Mapping[str, str] = field(default_factory=dict)
+
+    @property
+    def digest(self) -> str:
+        """The SHA-256 of all that was written, whatever its order."""
+        told: list[Any] = [self.title, sorted(self.written.items()), sorted(self.waived), sorted(self.improvable)]
+        told += [sorted((c.first, c.second, c.coefficient) for c in self.correlations)]
+        return hashlib.sha256(json.dumps(told, separators=(",", ":")).encode()).hexdigest()
 
     def with_estimates(self, **changes: Estimate) -> Setup:
         """Return the same set-up with some estimates replaced; keys are Python names (``air_temperature``)."""

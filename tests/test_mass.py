@@ -257,6 +257,19 @@ def test_a_sensor_makes_a_bare_value_uncertain():
     assert math.sqrt(sensed.mass.u**2 - bare.mass.u**2) == pytest.approx(expected, rel=2e-3)
 
 
+def test_the_error_of_a_sensor_is_a_difference():
+    """On the page and in JSON it has no zero of degrees Celsius in it."""
+    found = mass(
+        **FOAM_AIR,
+        reading=1.25e-3,
+        load_density=1050.0,
+        sensors_air_temperature=normal(0.0, 0.2),
+        load_density_kind="solid",
+    )
+    row = next(row for row in found.quantities if row.name == "sensors.air.temperature")
+    assert row.kind == "temperature difference"
+
+
 def test_what_is_lacking_is_said():
     with pytest.raises(InputError, match=r"reading: is not given\. Give the net reading"):
         mass(load_density=8000.0, **AIR)

@@ -13,6 +13,7 @@ __all__ = [
     "Block",
     "Cell",
     "Column",
+    "Drawing",
     "Figure",
     "Figures",
     "Group",
@@ -21,6 +22,7 @@ __all__ = [
     "Listing",
     "Note",
     "Notices",
+    "Signature",
     "Table",
     "Text",
     "Tone",
@@ -130,4 +132,19 @@ class Notices:
     notes: tuple[Note, ...]
 
 
-Block: TypeAlias = Heading | Text | Verdict | Figures | Table | Listing | Notices
+@dataclass(frozen=True, slots=True)
+class Drawing:
+    """A picture as SVG text; ``alt`` says in words what it shows."""
+
+    svg: str
+    alt: str
+
+
+@dataclass(frozen=True, slots=True)
+class Signature:
+    """Lines to be filled in by hand, each with what belongs on it."""
+
+    lines: tuple[str, ...]
+
+
+Block: TypeAlias = Heading | Text | Verdict | Figures | Table | Listing | Notices | Drawing | Signature

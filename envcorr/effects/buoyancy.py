@@ -65,6 +65,7 @@ EFFECT = Effect(
             "the target resolution: make sure which one is asked for (target.measurand).",
             source="OIML D 28:2004, clause 5",
             level="info",
+            unless_chosen="target.measurand",
         ),
     ),
 )

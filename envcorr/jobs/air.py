@@ -62,7 +62,7 @@ def air_density(setup: Setup, *, probability: float = 0.95) -> AirResult:
         Contribution(
             leaf.name,
             leaf.place.label,
-            leaf.place.quantity.kind,
+            leaf.place.kind,
             leaf.estimate,
             leaf.origin,
             float(found.contributions[i]),

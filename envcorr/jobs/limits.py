@@ -233,9 +233,7 @@ def _spreads(leaf: Leaf) -> bool:
 
 def _limit(scan: Scan, leaf: Leaf, passes_now: bool) -> Limit:
     mode = _mode(leaf)
-    quantity = leaf.place.quantity
-    kind = units.spread_kind(quantity.kind) if leaf.place.sensor else quantity.kind
-    blank = Limit(leaf.name, leaf.place.label, kind, mode, leaf.estimate, "no limit found")
+    blank = Limit(leaf.name, leaf.place.label, leaf.place.kind, mode, leaf.estimate, "no limit found")
     return _by_value(scan, leaf, blank, passes_now) if mode == "value" else _by_factor(scan, leaf, blank, passes_now)
 
 
@@ -460,7 +458,7 @@ def _steps(scan: Scan, leaves: Sequence[Leaf], now: Outcome, scope: Scope) -> tu
             break
         factors[leaf.name] /= 2
         outcome, e95 = other, least
-        steps.append(Step(leaf.name, leaf.place.quantity.kind, _scaled(leaf, factors[leaf.name]), e95))
+        steps.append(Step(leaf.name, leaf.place.kind, _scaled(leaf, factors[leaf.name]), e95))
     return tuple(steps), outcome.passes
 
 

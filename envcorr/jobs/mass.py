@@ -178,7 +178,7 @@ def _dof(plan: Plan, solved: Solution, reading: Estimate, own: float, bands: dic
 
 def _quantity_rows(plan: Plan, solved: Solution, reading: Estimate, own: float) -> tuple[Contribution, ...]:
     rows = [
-        Contribution(leaf.name, leaf.place.label, leaf.place.quantity.kind, leaf.estimate, leaf.origin, float(c))
+        Contribution(leaf.name, leaf.place.label, leaf.place.kind, leaf.estimate, leaf.origin, float(c))
         for leaf, c in zip(plan.leaves, solved.contributions, strict=True)
         if c
     ]

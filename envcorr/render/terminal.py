@@ -12,10 +12,12 @@ from typing import TYPE_CHECKING, Any, Literal, TextIO
 
 from envcorr.document.blocks import (
     Block,
+    Drawing,
     Figures,
     Heading,
     Listing,
     Notices,
+    Signature,
     Table,
     Text,
     Tone,
@@ -179,6 +181,13 @@ class _Page:
             grid.add_column(overflow="fold")
             grid.add_row(self.rich(sign), self.rich(_LEVEL_WORDS[note.level] + note.sentence + source))
             self.indented(grid)
+
+    def _drawing(self, block: Drawing) -> None:
+        self.line(block.alt, "dim", INDENT)
+
+    def _signature(self, block: Signature) -> None:
+        for line in block.lines:
+            self.line(f"{line}: {'_' * 24}", indent=INDENT)
 
     def _table(self, block: Table) -> None:
         from rich.padding import Padding
