@@ -14,6 +14,7 @@ from typing import Any
 import click
 
 import envcorr
+from envcorr.cli_level import level
 from envcorr.cli_limits import limits
 from envcorr.cli_mass import mass
 from envcorr.cli_record import record
@@ -194,6 +195,7 @@ def explain(name: str | None, as_json: bool) -> None:
         emit_blocks(page.overview() if subject is None else page.document(subject))
 
 
+cli.add_command(level)
 cli.add_command(limits)
 cli.add_command(mass)
 cli.add_command(record)

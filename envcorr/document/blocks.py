@@ -134,10 +134,11 @@ class Notices:
 
 @dataclass(frozen=True, slots=True)
 class Drawing:
-    """A picture as SVG text; ``alt`` says in words what it shows."""
+    """A picture as SVG text; ``alt`` says in words what it shows, ``lines`` draws it for a terminal."""
 
     svg: str
     alt: str
+    lines: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

@@ -183,6 +183,8 @@ class _Page:
             self.indented(grid)
 
     def _drawing(self, block: Drawing) -> None:
+        for line in block.lines:
+            self.line(line, indent=INDENT)
         self.line(block.alt, "dim", INDENT)
 
     def _signature(self, block: Signature) -> None:
