@@ -16,6 +16,7 @@ import click
 import envcorr
 from envcorr.cli_level import level
 from envcorr.cli_limits import limits
+from envcorr.cli_map import map_command
 from envcorr.cli_mass import mass
 from envcorr.cli_record import record
 from envcorr.cli_tools import (
@@ -197,6 +198,7 @@ def explain(name: str | None, as_json: bool) -> None:
 
 cli.add_command(level)
 cli.add_command(limits)
+cli.add_command(map_command)
 cli.add_command(mass)
 cli.add_command(record)
 

@@ -30,6 +30,7 @@ __all__ = [
     "KINDS",
     "Kind",
     "UnitError",
+    "fitting_unit",
     "from_unit",
     "parse",
     "parse_spread",
@@ -256,6 +257,11 @@ def rounded_down(value: float, kind: str, digits: int = 3) -> float:
         return value
     step = Fraction(10) ** (math.floor(math.log10(abs(size))) - digits + 1)
     return float(from_unit(float(math.floor(Fraction(abs(size)) / step) * step), kind, unit)) * math.copysign(1, size)
+
+
+def fitting_unit(value: float, kind: str, digits: int = 3) -> str:
+    """Return the unit in which an SI value is shown."""
+    return _fitting_unit(value, KINDS[kind], digits)
 
 
 def _fitting_unit(value: float, kind: Kind, digits: int) -> str:

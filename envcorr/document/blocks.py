@@ -10,6 +10,7 @@ from typing import Literal, TypeAlias
 
 __all__ = [
     "Align",
+    "Band",
     "Block",
     "Cell",
     "Column",
@@ -22,6 +23,8 @@ __all__ = [
     "Listing",
     "Note",
     "Notices",
+    "Region",
+    "Scale",
     "Signature",
     "Table",
     "Text",
@@ -142,10 +145,49 @@ class Drawing:
 
 
 @dataclass(frozen=True, slots=True)
+class Scale:
+    """An axis of a chart: its caption with the unit, its numbers, the present one, and whether it goes by ratio."""
+
+    caption: str
+    values: tuple[float, ...]
+    now: float
+    logarithmic: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class Region:
+    """A map: how probably the target is reached over two quantities (rows along y), against ``demanded``.
+
+    NaN where it is not known. ``alt`` says in words what it shows.
+    """
+
+    title: str
+    x: Scale
+    y: Scale
+    probability: tuple[tuple[float, ...], ...]
+    demanded: float
+    alt: str
+
+
+@dataclass(frozen=True, slots=True)
+class Band:
+    """A curve with its coverage band over one quantity, and the bounds ``allowed`` either way."""
+
+    title: str
+    x: Scale
+    caption: str
+    mean: tuple[float, ...]
+    low: tuple[float, ...]
+    high: tuple[float, ...]
+    allowed: float
+    alt: str
+
+
+@dataclass(frozen=True, slots=True)
 class Signature:
     """Lines to be filled in by hand, each with what belongs on it."""
 
     lines: tuple[str, ...]
 
 
-Block: TypeAlias = Heading | Text | Verdict | Figures | Table | Listing | Notices | Drawing | Signature
+Block: TypeAlias = Heading | Text | Verdict | Figures | Table | Listing | Notices | Drawing | Region | Band | Signature

@@ -78,8 +78,7 @@ def _svg(base: Base, observed: Observed, turns: tuple[Turn, ...]) -> str:
         parts += [
             f'<circle cx="{x:.1f}" cy="{y:.1f}" r="52" fill="none" stroke="#56636a" stroke-dasharray="3 3"/>',
             f'<circle cx="{x + dx:.1f}" cy="{y + dy:.1f}" r="11" fill="#fff" stroke="#1d2529" stroke-width="2"/>',
-            f'<text x="{x:.1f}" y="{y + 72:.1f}" text-anchor="middle" font-size="11">'
-            "bubble</text>",
+            f'<text x="{x:.1f}" y="{y + 72:.1f}" text-anchor="middle" font-size="11">bubble</text>',
         ]
     todo = {turn.name: turn for turn in turns}
     for name, (x, y) in zip(base.names, places, strict=True):

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import copy
+import math
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
 
-from envcorr.errors import Fault, InputError
+from envcorr.errors import Fault, InputError, NotComputedError
 from envcorr.estimate import Estimate, Value
 from envcorr.jobs.common import correlation_matrix
 from envcorr.jobs.verdict import is_needed, target_of
@@ -82,6 +84,28 @@ class Scan:
             if inside < self.target.probability * self.size:
                 return False
         return True
+
+    def probability(self, changes: Mapping[str, Estimate]) -> float:
+        """Return the smaller of the two conformance probabilities, NaN where the model has no answer."""
+        try:
+            run = self._changed(changes)
+        except NotComputedError:
+            return math.nan
+        least = 1.0
+        for scope, chosen in self.scopes_of(run.plan).items():
+            error = np.broadcast_to(run.result.error(self.state, chosen), (self.size,))
+            if np.isnan(error).any():
+                return math.nan
+            least = min(least, float(np.mean(np.abs(error) <= self.target.bound(scope))))
+        return least
+
+    def held(self, changes: Mapping[str, Estimate]) -> Scan:
+        """Return the same with some quantities otherwise, to vary others from there on the same draws."""
+        other = copy.copy(self)
+        other.run = self._changed(changes)
+        other.setup, other.plan = other.run.plan.setup, other.run.plan
+        other.scopes = {scope: scope_of(other.plan, scope) for scope in SCOPES}
+        return other
 
     def e95(self, outcome: Outcome, scope: Scope) -> float:
         """Return the quantile of the absolute error [kg] at the demanded probability."""

@@ -9,6 +9,7 @@ from importlib.resources import files
 from typing import Any
 
 from envcorr.document.blocks import Block, Drawing, Heading
+from envcorr.render.html import drawn
 
 __all__ = ["render"]
 
@@ -17,6 +18,7 @@ def render(blocks: Sequence[Block]) -> bytes:
     """Return the blocks as a PDF file. Texts go in as data, so that nothing in them is markup."""
     import typst
 
+    blocks = [drawn(block) for block in blocks]
     title = next((block.text for block in blocks if isinstance(block, Heading)), "envcorr")
     drawings = [block for block in blocks if isinstance(block, Drawing)]
     told: list[dict[str, Any]] = []

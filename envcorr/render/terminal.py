@@ -11,12 +11,17 @@ from collections.abc import Iterable, Sequence
 from typing import TYPE_CHECKING, Any, Literal, TextIO
 
 from envcorr.document.blocks import (
+    Band,
     Block,
+    Column,
     Drawing,
     Figures,
+    Group,
     Heading,
     Listing,
     Notices,
+    Region,
+    Scale,
     Signature,
     Table,
     Text,
@@ -35,6 +40,8 @@ WIDEST = 120
 NARROWEST = 60
 INDENT, GAP, NARROWEST_COLUMN = 2, 2, 8
 _WIDE = 100  # from here on there is room for long bars
+_FIELD_ROWS = 24
+"""Lines of a map (judgement: as many as a small terminal has)."""
 _BAR = {False: 8, True: 20}
 _EIGHTHS = " ▏▎▍▌▋▊▉"
 
@@ -187,6 +194,45 @@ class _Page:
             self.line(line, indent=INDENT)
         self.line(block.alt, "dim", INDENT)
 
+    def _region(self, block: Region) -> None:
+        """Draw the field in letters, y upwards: where it is reached, where not, and the present point."""
+        signs = {True: "█" if self.bars else "#", False: "·" if self.can("·") else "."}
+        rows = [[("?" if p != p else signs[p >= block.demanded]) for p in row] for row in block.probability]
+        column, row = (_nearest(scale) for scale in (block.x, block.y))
+        if all(scale.values[0] <= scale.now <= scale.values[-1] for scale in (block.x, block.y)):
+            rows[row][column] = "O"
+        self.console.print()
+        self.line(block.title, "bold")
+        step = max(1, -(-len(rows) // _FIELD_ROWS))
+        twice = 2 if 2 * len(block.x.values) + INDENT <= self.width else 1
+        kept = sorted({*range(0, len(rows), step), row}, reverse=True)
+        for i in kept:
+            self.line("".join(sign * twice for sign in rows[i][: self.width // twice]), indent=INDENT)
+        ends = f"{block.x.values[0]:.4g} to {block.x.values[-1]:.4g}"
+        self.line(f"across: {block.x.caption}, {ends}", "dim", INDENT)
+        ends = f"{block.y.values[0]:.4g} to {block.y.values[-1]:.4g}"
+        self.line(f"upwards: {block.y.caption}, {ends}", "dim", INDENT)
+        self.line(f"{signs[True]} reached, {signs[False]} not reached, O now, ? not computed", "dim", INDENT)
+
+    def _band(self, block: Band) -> None:
+        picked = sorted({round(i * (len(block.mean) - 1) / 11) for i in range(12)})
+        columns = (
+            Column("value", "right"),
+            Column("mean error", "right"),
+            Column("from", "right"),
+            Column("to", "right"),
+            Column("", "left"),
+        )
+        rows = []
+        for i in picked:
+            ends = (block.low[i], block.high[i])
+            inside = "within" if all(abs(end) <= block.allowed for end in ends) else "beyond"
+            rows.append((f"{block.x.values[i]:.4g}", *(f"{v:+.3g}" for v in (block.mean[i], *ends)), inside))
+        self.console.print()
+        self.line(block.title, "bold")
+        told = f"Value: {block.x.caption}. The others: {block.caption}; from and to: the coverage interval."
+        self._table(Table(columns, (Group(tuple(rows)),), f"{told} Allowed are ±{block.allowed:.3g}."))
+
     def _signature(self, block: Signature) -> None:
         for line in block.lines:
             self.line(f"{line}: {'_' * 24}", indent=INDENT)
@@ -284,3 +330,8 @@ class _Page:
         from rich.padding import Padding
 
         self.console.print(Padding(table, (0, 0, 0, INDENT)))
+
+
+def _nearest(scale: Scale) -> int:
+    """Return which number of a scale lies next to the present one."""
+    return min(range(len(scale.values)), key=lambda i: abs(scale.values[i] - scale.now))
