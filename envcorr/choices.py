@@ -36,6 +36,25 @@ CHOICES: tuple[Choice, ...] = (
         source="the cautious of the two",
     ),
     Choice(
+        "balance.warmed_up",
+        "whether the balance has been switched on for long enough",
+        {"yes": "for hours, in its place", "no": "it was switched on or moved today"},
+        notes={
+            "no": "A balance that was just switched on or moved drifts for hours, and what it does then is not "
+            "computed: leave it on overnight, then adjust it. Weigh one steady object every ten minutes to see it "
+            "settle."
+        },
+    ),
+    Choice(
+        "cycle.long_on_pan",
+        "whether the load stays on the pan for many minutes",
+        {"yes": "the reading is watched or logged under load", "no": "it is read as soon as it is steady"},
+        notes={
+            "yes": "Under a load that stays on, a balance creeps, and its zero may come back changed; that is not "
+            "computed. Leave a weight on the pan as long and as often, and read the zero after it."
+        },
+    ),
+    Choice(
         "balance.corrects_buoyancy",
         "whether the balance or its software already corrects for the air",
         {"yes": "the reading is already a mass", "no": "the reading is a weighing in air"},

@@ -173,7 +173,8 @@ def room(
 def explain(name: str | None, as_json: bool) -> None:
     """Explain a quantity, a choice or an effect.
 
-    Without a name, all of them are listed; "materials" lists the densities that are known by name.
+    Without a name, all of them are listed; "materials" lists the densities that are known by name, "presets" usual
+    disturbances.
     """
     from envcorr import materials
     from envcorr.document import explain as page
@@ -186,6 +187,15 @@ def explain(name: str | None, as_json: bool) -> None:
             emit_json(json_explain.list_of_materials())
         else:
             emit_blocks(page_of_materials.document())
+        return
+    if name == "presets":
+        from envcorr.document import presets as page_of_presets
+        from envcorr.render import json_explain
+
+        if as_json:
+            emit_json(json_explain.list_of_presets())
+        else:
+            emit_blocks(page_of_presets.document())
         return
     subject = None if name is None else page.look_up(name)
     if as_json:

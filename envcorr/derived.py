@@ -337,6 +337,18 @@ WAYS: tuple[Way, ...] = (
     ),
     Way(
         "adjusted.air.pressure",
+        lambda air_pressure, air_altitude, adjusted_air_altitude, adjusted_pressure_change: (
+            air_pressure
+            * (atmosphere.pressure_at_altitude(adjusted_air_altitude) / atmosphere.pressure_at_altitude(air_altitude))
+            + adjusted_pressure_change
+        ),
+        "about the present one, at the height of the adjustment",
+        source="ISO 2533:1975, standard atmosphere",
+        only_if=lambda given: "adjusted.air.altitude" in given,
+        at_best=("air_pressure", "air_altitude", "adjusted_air_altitude"),
+    ),
+    Way(
+        "adjusted.air.pressure",
         lambda air_pressure, adjusted_pressure_change: air_pressure + adjusted_pressure_change,
         "about the present one",
         at_best=("air_pressure",),

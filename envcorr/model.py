@@ -131,6 +131,14 @@ def _words_that_matter(planner: Planner, needed: set[int], effects: Sequence[Pla
     return names.union(*(when or {} for when in (*taken, *ruled)))
 
 
+def _told_only(planner: Planner) -> set[str]:
+    """Return the choices on which nothing depends: what they have to say is said."""
+    effects = planner.catalogue.effects.values()
+    depended = {name for several in planner.catalogue.ways.values() for way in several for name in way.when or {}}
+    depended |= {name for effect in effects for name in (effect.needed, *(effect.when or {}))}
+    return {name for name, choice in planner.catalogue.choices.items() if choice.notes and name not in depended}
+
+
 def _finish(
     planner: Planner,
     targets: dict[str, int],
@@ -166,7 +174,7 @@ def _finish(
     words = _words_that_matter(planner, needed, effects)
     unused = [name for name in setup.estimates if name not in used]
     guards = {name for effect in planner.catalogue.effects.values() for name in effect.when or {}}
-    unused += [name for name in setup.choices if name not in words | guards]
+    unused += [name for name in setup.choices if name not in words | guards | _told_only(planner)]
     assumed = [a for a in planner.assumed.values() if a.name in (words if a.word else used)]
     return Plan(
         setup=setup,

@@ -17,6 +17,9 @@ VERDICTS = {
     "milligram_bench": "reached",
     "filter_room": "reached once corrected",
     "powder_station": "reached once treated",
+    "volatile_liquid": "reached once treated",
+    "upstairs_move": "reached once corrected",
+    "hood_over_balance": "reached once treated",
 }
 
 

@@ -81,8 +81,15 @@ sensitivity_drift = "2 ppm"
 sensitivity_temperature_coefficient = "1 ppm/K"
 zero_temperature_coefficient = "5 µg/K"
 zero_tilt_coefficient = "2 µg/arcmin"
+shaft_area = "0.2 cm²"
+moving_mass = "60 g"
+filter_corner = "0.3 Hz"
+integration_time = "2 s"
+warmed_up = "no"
 
 [bench]
+magnetic_field = "50 µT"
+magnetic_gradient = { value = "1 mT/m", u = "0.5 mT/m" }
 tilt_x = { value = "1 arcmin", u = "1 arcmin" }
 tilt_y = "0.6 mm/m"
 
@@ -102,6 +109,38 @@ isotherm_slope = { value = 0.02, u = 0.005 }
 uptake_time = "10 min"
 handled_by = "bare fingers"
 touches = 2
+magnetic = true
+magnetic_susceptibility = 0.01
+polarisation = "2 µT"
+
+[site]
+latitude = { value = "47.5 °", u = "0.1 °" }
+
+[adjusted.site]
+latitude = "47.4 °"
+
+[draught]
+preset = "air conditioning"
+shield_factor = "10 %"
+area = "6 cm²"
+pan_area = "50 cm²"
+direction = "down"
+
+[pulse]
+pressure = "0.2 Pa"
+
+[vibration]
+velocity_rms = { value = "50 µm/s", half_width = "20 µm/s" }
+frequency = "12 Hz"
+
+[evaporation]
+liquid = "ethanol"
+opening = "10 mm"
+depth = "30 mm"
+open_time = { value = "20 s", half_width = "5 s" }
+
+[headspace]
+saturation = { low = 0.2, high = 0.9 }
 
 [film]
 area = "80 cm²"
@@ -113,7 +152,7 @@ mass = "8 g"
 density = "2.7 g/cm³"
 inner_volume = "20 mL"
 outer_volume = { low = "23 mL", high = "24 mL", shape = "log-uniform" }
-closed = "kept shut"
+closed = "never"
 warmer_by = "0.2 K"
 
 [static]

@@ -5,14 +5,14 @@ from __future__ import annotations
 import math
 from typing import Any
 
-from envcorr import materials, units
+from envcorr import materials, presets, units
 from envcorr.catalogue import CATALOGUE, Catalogue, Place
 from envcorr.document.explain import Subject, acts_on, condition, needs, rests_on, used_by
 from envcorr.effect import Effect, Way, parameters
 from envcorr.render.json import envelope, estimate, figure
 from envcorr.vocabulary import Choice
 
-__all__ = ["explain", "list_of_materials"]
+__all__ = ["explain", "list_of_materials", "list_of_presets"]
 
 
 def explain(subject: Subject | None, catalogue: Catalogue = CATALOGUE) -> dict[str, Any]:
@@ -46,6 +46,21 @@ def list_of_materials() -> dict[str, Any]:
             }
         )
     return envelope("explain", {"materials": found})
+
+
+def list_of_presets() -> dict[str, Any]:
+    """Return the usual disturbances by name, each with its figure and its source."""
+    found = [
+        {
+            "subject": one.subject,
+            "name": one.name,
+            "figure": figure(one.value, one.kind),
+            "text": one.text,
+            "source": one.source,
+        }
+        for one in presets.every()
+    ]
+    return envelope("explain", {"presets": found})
 
 
 def _subject(subject: Subject, catalogue: Catalogue) -> dict[str, Any]:

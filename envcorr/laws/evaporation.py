@@ -1,0 +1,104 @@
+"""Evaporation into still air: diffusion through an opening, and the surface that cools itself by it.
+
+SI units throughout; floats or arrays that broadcast.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from envcorr.constants import STEFAN_BOLTZMANN
+from envcorr.estimate import Value
+from envcorr.laws.cooling import thermal_conductivity
+
+__all__ = [
+    "GAS_CONSTANT",
+    "boiled",
+    "clausius_clapeyron",
+    "diffusion_path",
+    "fuller",
+    "stefan_flux",
+    "surface_temperature",
+]
+
+GAS_CONSTANT = 8.314462618  # J/(mol K); SI brochure, 9th edition (exact, rounded)
+_AIR_MOLAR_MASS, _AIR_VOLUME = 28.97e-3, 19.7  # kg/mol and the diffusion volume of air; Poling et al., table 11-1
+_EMISSIVITY = 0.95  # of liquids and glass in the infrared (Incropera and DeWitt, table A.11, from memory)
+_NEARLY = 0.999  # of the pressure: a vapour pressure beyond it boils, which diffusion does not describe
+_STEPS = 12
+
+
+def fuller(temperature: Value, pressure: Value, molar_mass: float, volume: float) -> Value:
+    """Return the diffusivity [m²/s] of a vapour in air at [K] and [Pa], molar mass in kg/mol, diffusion volume.
+
+    Fuller, Schettler and Giddings: D = 0.00143 T^1.75/(p M^(1/2) (v_a^(1/3) + v_b^(1/3))²) in cm²/s, bar, g/mol, with
+    M = 2/(1/M_a + 1/M_b); Poling, Prausnitz, O'Connell, 5th ed., (11-4.4). Within about 4 % on the average.
+    """
+    mean = 2000 / (1 / molar_mass + 1 / _AIR_MOLAR_MASS)  # g/mol
+    sizes = (np.cbrt(volume) + np.cbrt(_AIR_VOLUME)) ** 2
+    return 1e-4 * 0.00143 * temperature**1.75 / (pressure * 1e-5 * np.sqrt(mean) * sizes)
+
+
+def diffusion_path(depth: Value, diameter: Value) -> Value:
+    """Return the length [m] of still air above a liquid ``depth`` below the rim of a round opening.
+
+    The depth, and beyond the opening that of a disc in a half space, pi a/4 with a its radius (Stefan; Crank, The
+    Mathematics of Diffusion, 2nd ed., 3.3.3, the place from memory).
+    """
+    return depth + np.pi / 8 * diameter
+
+
+def clausius_clapeyron(pressure: Value, heat: Value, temperature: Value, reference: Value) -> Value:
+    """Return the vapour pressure [Pa] at a temperature [K] from that at a reference one, the heat [J/mol] constant."""
+    return pressure * np.exp(heat / GAS_CONSTANT * (1 / reference - 1 / temperature))
+
+
+def boiled(vapour_pressure: Value, pressure: Value) -> Value:
+    """Return where a liquid boils, so that diffusion does not describe what it loses."""
+    return np.asarray(vapour_pressure >= _NEARLY * pressure)
+
+
+def stefan_flux(
+    diffusivity: Value,
+    path: Value,
+    temperature: Value,
+    pressure: Value,
+    at_surface: Value,
+    far: Value,
+    molar_mass: float,
+) -> Value:
+    """Return the vapour [kg/(m² s)] that leaves through still air, D p M/(R T L) ln((p - p_far)/(p - p_surface)).
+
+    Stefan's flow; Bird, Stewart, Lightfoot, Transport Phenomena, 2nd ed., 18.2. Pressures of the vapour in pascal.
+    """
+    held = np.minimum(at_surface, _NEARLY * pressure)
+    drive = np.log1p((held - far) / (pressure - held))
+    return diffusivity * pressure * molar_mass / (GAS_CONSTANT * temperature * path) * drive
+
+
+def surface_temperature(
+    temperature: Value,
+    pressure: Value,
+    path: Value,
+    diffusivity: Value,
+    vapour_pressure: Value,
+    heat: Value,
+    far: Value,
+    molar_mass: float,
+) -> Value:
+    """Return the temperature [K] at which the heat that comes from the air is that which the vapour takes along.
+
+    Heat comes by conduction through the same still air and by radiation (linear in the difference). ``vapour_pressure``
+    and ``heat`` [J/mol] are those at the air's temperature. Newton's steps from the air's temperature down: the flux is
+    convex in the temperature, so they cannot overshoot.
+    """
+    transfer = thermal_conductivity(temperature) / path + 4 * _EMISSIVITY * STEFAN_BOLTZMANN.value * temperature**3
+    surface: Value = temperature
+    for _ in range(_STEPS):
+        at_surface = np.minimum(clausius_clapeyron(vapour_pressure, heat, surface, temperature), _NEARLY * pressure)
+        flux = stefan_flux(diffusivity, path, temperature, pressure, at_surface, far, 1.0)  # mol/(m² s)
+        slope = diffusivity * pressure / (GAS_CONSTANT * temperature * path) / (pressure - at_surface)
+        slope = slope * at_surface * heat / (GAS_CONSTANT * surface**2)
+        excess = heat * flux - transfer * (temperature - surface)
+        surface = surface - excess / (heat * slope + transfer)
+    return surface
