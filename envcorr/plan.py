@@ -249,7 +249,11 @@ class Plan:
             return None
         leaves = tuple(replace(leaf, estimate=leaf.taken_from(now)) for leaf in self.leaves)
         nodes: list[Node] = []
-        for node in self.nodes:
+        counted = self._counted
+        for i, node in enumerate(self.nodes):
+            if i not in counted:
+                nodes.append(node)
+                continue
             if node.leaf >= 0:
                 centre = leaves[node.leaf].estimate.centre
             elif node.best_of >= 0:
@@ -257,9 +261,23 @@ class Plan:
             elif node.function is None:
                 centre = node.centre
             else:
-                centre = node.function(*[nodes[i].centre for i in node.inputs])
+                centre = node.function(*[nodes[j].centre for j in node.inputs])
             nodes.append(Node(node.function, node.inputs, centre, node.leaf, node.slopes, node.best_of))
         return replace(self, setup=setup, nodes=tuple(nodes), leaves=leaves)
+
+    @cached_property
+    def _counted(self) -> frozenset[int]:
+        """The nodes that are run, and those whose best estimates they hold."""
+        found: set[int] = set()
+        pending = list(self._order)
+        while pending:
+            i = pending.pop()
+            if i not in found:
+                found.add(i)
+                pending.extend(self.nodes[i].inputs)
+                if self.nodes[i].best_of >= 0:
+                    pending.append(self.nodes[i].best_of)
+        return frozenset(found)
 
     @cached_property
     def per_correction(self) -> float:

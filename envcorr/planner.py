@@ -117,7 +117,7 @@ class Planner:
                 self.stack.pop()
         found = self.memo[key]
         if isinstance(found, LacksError):
-            raise found
+            raise found.with_traceback(None)  # else it would grow with every lookup
         return found
 
     def _resolve(self, place: Place, known: bool) -> int:

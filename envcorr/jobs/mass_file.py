@@ -28,6 +28,8 @@ __all__ = ["TableSummary", "added_headers", "convert"]
 
 MOST_XLSX_ROWS = 1_048_575
 """Rows of a sheet less the headers (ECMA-376)."""
+HELD_WHOLE = 2**27
+"""Bytes of a file of text that is read at one go (judgement: a few million rows)."""
 READ_AHEAD = 8
 """Blocks that are read at a time."""
 FEW_WHERE_DRAWN = 1024
@@ -113,7 +115,8 @@ def convert(
     block = max(1, min(BLOCK, FEW_WHERE_DRAWN)) if count else BLOCK
 
     def blocks(*_: Any) -> Iterator[pl.DataFrame]:
-        for batch in _blocks(with_numbers(frame, layout), total, block):
+        small = source.suffix.lower() != ".parquet" and source.stat().st_size <= HELD_WHOLE
+        for batch in _blocks(with_numbers(frame, layout), total, block, small=small):
             yield _answer(batch, layout, solver, added, summary)
             if progress is not None:
                 progress(summary.rows, total)
@@ -125,11 +128,14 @@ def convert(
     return summary
 
 
-def _blocks(frame: pl.LazyFrame, total: int, block: int) -> Iterator[pl.DataFrame]:
+def _blocks(frame: pl.LazyFrame, total: int, block: int, *, small: bool) -> Iterator[pl.DataFrame]:
     """Yield the rows in order and in blocks of one size, so that the same table gives the same bytes.
 
-    A few blocks are read ahead, never the whole table.
+    A ``small`` table may be held whole; of another a few blocks are read ahead.
     """
+    if small:
+        yield from frame.collect_batches(chunk_size=block, maintain_order=True)
+        return
     step = READ_AHEAD * block
 
     def read(start: int) -> pl.DataFrame:

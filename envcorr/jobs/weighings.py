@@ -110,7 +110,10 @@ class Run:
         keep_freed_memory()
         self.plan, self.drawn, self.repeats, self.difference = plan, drawn, repeats, difference
         self.tied = drawn.tied(correlation)
-        self.leaf_values = [self.place(row, leaf) for row, leaf in enumerate(plan.leaves)]
+        # what nothing rests on need not be drawn
+        self.leaf_values = [
+            self.place(row, leaf) if plan.reach(row) else leaf.estimate.centre for row, leaf in enumerate(plan.leaves)
+        ]
         self.base = plan.evaluate(self.leaf_values)
         self._orders: dict[int, Any] = {}
         self._drawn_again: dict[int, tuple[list[Value], list[Any]]] = {}
