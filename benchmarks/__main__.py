@@ -5,7 +5,7 @@ from __future__ import annotations
 import importlib
 import sys
 
-NAMES = ("startup", "air", "room", "limits", "mass")
+NAMES = ("startup", "air", "room", "limits", "mass", "page")
 
 
 def main(names: list[str]) -> int:

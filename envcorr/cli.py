@@ -18,6 +18,7 @@ from envcorr.cli_level import level
 from envcorr.cli_limits import limits
 from envcorr.cli_map import map_command
 from envcorr.cli_mass import mass
+from envcorr.cli_page import page
 from envcorr.cli_record import record
 from envcorr.cli_tools import (
     air_options,
@@ -211,6 +212,7 @@ cli.add_command(limits)
 cli.add_command(map_command)
 cli.add_command(mass)
 cli.add_command(record)
+cli.add_command(page)
 
 
 def main(args: Sequence[str] | None = None) -> None:

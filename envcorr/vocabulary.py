@@ -110,9 +110,33 @@ _K0 = ZERO_CELSIUS.value
 
 QUANTITIES: tuple[Quantity, ...] = (
     # what was read --------------------------------------------------------------------------------------------
-    Quantity("reading", "mass", "net reading", "What the display shows of the load alone.", low=-100.0, high=100.0),
-    Quantity("gross", "mass", "gross reading", "What the display shows of load and container.", low=-100.0, high=100.0),
-    Quantity("tare", "mass", "tare reading", "What the display shows of the container alone.", low=-100.0, high=100.0),
+    Quantity(
+        "reading",
+        "mass",
+        "net reading",
+        "What the display shows of the load alone.",
+        low=-100.0,
+        high=100.0,
+        example="1.25000 g",
+    ),
+    Quantity(
+        "gross",
+        "mass",
+        "gross reading",
+        "What the display shows of load and container.",
+        low=-100.0,
+        high=100.0,
+        example="31.25 g",
+    ),
+    Quantity(
+        "tare",
+        "mass",
+        "tare reading",
+        "What the display shows of the container alone.",
+        low=-100.0,
+        high=100.0,
+        example="30 g",
+    ),
     # air: what the room does -------------------------------------------------------------------------------
     Quantity(
         "air.temperature",

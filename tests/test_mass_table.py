@@ -238,6 +238,21 @@ def test_files_that_cannot_be_used(tmp_path, foam):
             convert(foam, target, setup(), force=True)
 
 
+def test_what_cannot_be_read_is_never_replaced_by_the_set_up(tmp_path):
+    """The set-up gives a reading and a density for rows without one; a row with a text there is no such row."""
+    path = write(tmp_path, "reading [g],load.density [kg/m³]\n1.25,1050\nx,1050\n1.25,y\n,1050\n")
+    summary = convert(path, tmp_path / "out.csv", setup(reading="2 g", load={"density": "1050 kg/m³"}))
+    found = pl.read_csv(tmp_path / "out.csv")
+    assert summary.failed == 2
+    assert found["mass [g]"].is_null().to_list() == [False, True, True, False]
+    assert found["mass [g]"][3] == pytest.approx(2.0018, abs=1e-4)
+
+
+def test_a_table_of_too_many_rows_is_refused_where_that_is_asked(tmp_path, foam):
+    with pytest.raises(InputError, match="has 7 rows, more than 5"):
+        convert(foam, tmp_path / "out.csv", setup(), most=5)
+
+
 def test_an_existing_file_is_kept_unless_forced(tmp_path, foam):
     target = write(tmp_path, "mine\n", "out.csv")
     with pytest.raises(InputError, match="already there"):

@@ -114,6 +114,8 @@ def example(quantity: Quantity) -> str:
         size = float(taken.centre) or float(taken.spread)
         if size:
             return units.show(size, kind)
+    if quantity.example:
+        return quantity.example
     low, high = max(quantity.low, quantity.usual[0]), min(quantity.high, quantity.usual[1])
     for text in units.KINDS[kind].examples:
         if low <= units.parse(text, kind) <= high:

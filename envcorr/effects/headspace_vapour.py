@@ -35,7 +35,7 @@ EFFECT = Effect(
     load=load,
     correctable=True,
     # a vessel kept shut loses nothing
-    when={"container.closed": ("never", "each time")},
+    when={"container.closed": ("never", "each time"), "evaporation.liquid": tuple(liquids.every())},
     treatment="tare the vessel with a trace of the liquid in it, and close it",
     leaves="what differs between the two",
     quantities=(

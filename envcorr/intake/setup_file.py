@@ -24,7 +24,7 @@ from envcorr.propagation import correlation_root
 from envcorr.setup import Correlation, Setup
 from envcorr.vocabulary import MOMENTS, Choice
 
-__all__ = ["REQUIRED", "parse_setup", "place_of", "read_setup"]
+__all__ = ["REQUIRED", "flat", "parse_setup", "place_of", "read_setup"]
 
 REQUIRED = {"target.resolution": '[target] resolution = "0.1 mg"', "load.mass": '[load] mass = "5 g"'}
 """What a room check cannot do without, and how to write it."""
@@ -72,6 +72,17 @@ def parse_setup(
         title=reader.title,
         written=reader.written,
     )
+
+
+def flat(mapping: Mapping[str, Any]) -> dict[str, Any]:
+    """Return every entry of the tables by its dotted name, as it was written; title and correlations by theirs."""
+    found: dict[str, Any] = {}
+    for key, value in mapping.items():
+        if isinstance(value, Mapping) and not (key in CATALOGUE.quantities and not _holds_sections(value)):
+            found.update(_entries(key, value))
+        else:
+            found[key] = value
+    return found
 
 
 class _Reader:

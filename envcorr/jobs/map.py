@@ -20,7 +20,7 @@ from envcorr.plan import Leaf, Plan
 from envcorr.propagation import interval_with
 from envcorr.setup import Setup
 
-__all__ = ["Axis", "AxisRequest", "Curve", "Grid", "Varied", "make_curve", "make_grid"]
+__all__ = ["Axis", "AxisRequest", "Curve", "Grid", "Varied", "axis_of", "make_curve", "make_grid"]
 
 Varied = Literal["value", "spread"]
 Floats = NDArray[np.float64]
@@ -209,7 +209,7 @@ def _axes(scan: Scan, requests: Sequence[AxisRequest], steps: int) -> list[Axis]
     axes: list[Axis] = []
     for request in requests:
         try:
-            axes.append(_axis(scan, request, max(steps, FEWEST)))
+            axes.append(axis_of(scan, request, max(steps, FEWEST)))
         except InputError as error:
             faults += error.faults
     if faults:
@@ -217,7 +217,8 @@ def _axes(scan: Scan, requests: Sequence[AxisRequest], steps: int) -> list[Axis]
     return axes
 
 
-def _axis(scan: Scan, request: AxisRequest, steps: int) -> Axis:
+def axis_of(scan: Scan, request: AxisRequest, steps: int) -> Axis:
+    """Return the axis of a request. Raises :class:`InputError` where it is impossible."""
     estimate = scan.given(request.name)
     leaf = next(leaf for leaf in scan.plan.leaves if leaf.name == request.name)
     varied: Varied = request.varied or ("value" if estimate.is_exact else "spread")

@@ -117,8 +117,9 @@ def masses_by_draws(
 def apart(mass: Value, half: Value, found: MassDraws) -> NDArray[np.bool_]:
     """Return where first order, mass ± half, is not validated to the first significant digit of u.
 
-    JCGM 101:2008, 8.1.3: an end point further off than half a unit in that digit.
+    JCGM 101:2008, 8.1.3: an end point further off than half a unit in that digit, u being the smaller of the two (a
+    heavy tail makes that of the draws large).
     """
     with np.errstate(divide="ignore"):
-        tolerance = 0.5 * 10.0 ** np.floor(np.log10(found.u))
+        tolerance = 0.5 * 10.0 ** np.floor(np.log10(np.minimum(found.u, half / 2)))
     return np.maximum(np.abs(mass - half - found.low), np.abs(mass + half - found.high)) > tolerance

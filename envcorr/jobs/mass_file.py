@@ -84,6 +84,7 @@ def convert(
     beside: Sequence[str] = (),
     count: int = 0,
     seed: int = 0,
+    most: int | None = None,
     progress: Callable[[int, int], None] | None = None,
 ) -> TableSummary:
     """Write ``source`` with the masses of its readings added to ``target``; CSV, XLSX or Parquet by their endings.
@@ -91,7 +92,8 @@ def convert(
     The target appears whole or not at all, and never replaces the source; an existing one needs ``force``. Rows that
     cannot be computed are kept, marked and counted. ``beside`` names what to tell beside the mass ("conventional mass",
     "volume"); ``count`` draws a row give a coverage interval by Monte Carlo too (none if 0). ``progress`` is told the
-    rows done and in all. Raises :class:`InputError` where the table or the target cannot be used.
+    rows done and in all, from another thread; a table of more than ``most`` rows is refused. Raises :class:`InputError`
+    where the table or the target cannot be used.
     """
     import polars as pl
     from polars.io.plugins import register_io_source
@@ -109,6 +111,8 @@ def convert(
     total = int(frame.select(pl.len()).collect(engine="streaming").item())
     if total == 0:
         raise InputError([Fault("the table", "has headers and no rows.", "Add a line a reading.")])
+    if most is not None and total > most:
+        raise InputError([Fault("the table", f"has {total} rows, more than {most}.", "Cut it, or use envcorr mass.")])
     summary = TableSummary(str(source), str(target), layout, k=coverage_factor(probability, float("inf")))
     summary.probability = probability
     solver = RowSolver(setup, beside=beside, count=count, probability=probability, seed=seed)
@@ -162,6 +166,7 @@ def _answer(
         column.values[unreadable] = np.nan
     found = solver.solve(columns, words, batch.height)
     found.faults[unreadable] = faults[unreadable]
+    found.mass[unreadable] = np.nan  # whatever the set-up would have put in the place of what cannot be read
     failed = np.isnan(found.mass)
     sizes = _numbers(found, layout, summary, failed)
     for header, values in zip(added, sizes, strict=False):

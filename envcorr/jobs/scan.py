@@ -6,6 +6,7 @@ import copy
 import math
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 
@@ -51,17 +52,22 @@ class Scan:
             if is_needed(lacking.effect.needed, setup) and lacking.effect.name not in setup.waived
         )
         """Effects that this load needs and that could not be assessed: no verdict can be a yes."""
-        repeats = setup.estimates.get("cycle.repeats", Estimate(1.0))
-        self.run = run_weighings(
+        self.count, self.seed = count or FIRST_BATCHES * BATCH, seed
+        self.scopes = {scope: scope_of(self.plan, scope) for scope in SCOPES}
+
+    @cached_property
+    def run(self) -> Run:
+        """The weighings as they are, drawn when they are first asked for."""
+        repeats = self.setup.estimates.get("cycle.repeats", Estimate(1.0))
+        return run_weighings(
             self.plan,
             correlation_matrix(self.plan),
             round(float(repeats.centre)),
-            count or FIRST_BATCHES * BATCH,
-            seed,
+            self.count,
+            self.seed,
             self.target.probability,
             self.target.measurand,
         )
-        self.scopes = {scope: scope_of(self.plan, scope) for scope in SCOPES}
 
     @property
     def size(self) -> int:

@@ -2,12 +2,17 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
+from functools import cache
 from importlib.resources import files
+from typing import TYPE_CHECKING
 
 from envcorr.document.blocks import Band, Block, Drawing, Heading, Region
 
-__all__ = ["drawn", "render"]
+if TYPE_CHECKING:
+    from jinja2 import Template
+
+__all__ = ["drawn", "fragment", "render"]
 
 
 def drawn(block: Block) -> Block:
@@ -22,10 +27,29 @@ def drawn(block: Block) -> Block:
 
 def render(blocks: Sequence[Block]) -> str:
     """Return the blocks as HTML. All text is escaped; drawings are the program's own."""
-    from jinja2 import Environment
-
-    template = files("envcorr").joinpath("data/report.html.jinja").read_text(encoding="utf-8")
-    environment = Environment(autoescape=True, trim_blocks=True, lstrip_blocks=True, keep_trailing_newline=True)
     title = next((block.text for block in blocks if isinstance(block, Heading)), "envcorr")
-    named = [(type(block).__name__.lower(), block) for block in map(drawn, blocks)]
-    return environment.from_string(template).render(title=title, blocks=named)
+    return _template("report.html.jinja").render(title=title, blocks=_named(map(drawn, blocks)))
+
+
+def fragment(blocks: Sequence[Block]) -> str:
+    """Return the blocks as a piece of HTML with its style, for a page that has its own frame."""
+    inner = _template("blocks.html.jinja").render(blocks=_named(map(drawn, blocks)))
+    return f'<style>{_file("fragment.css")}{_file("blocks.css")}</style><div class="envcorr">{inner}</div>'
+
+
+def _named(blocks: Iterable[Block]) -> list[tuple[str, Block]]:
+    return [(type(block).__name__.lower(), block) for block in blocks]
+
+
+def _file(name: str) -> str:
+    return files("envcorr").joinpath(f"data/{name}").read_text(encoding="utf-8")
+
+
+@cache
+def _template(name: str) -> Template:
+    from jinja2 import Environment, FunctionLoader
+
+    environment = Environment(
+        loader=FunctionLoader(_file), autoescape=True, trim_blocks=True, lstrip_blocks=True, keep_trailing_newline=True
+    )
+    return environment.get_template(name)
