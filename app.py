@@ -1,6 +1,10 @@
 """The page in the browser: ``streamlit run app.py``."""
 
-from envcorr.page.frame import run
+from pathlib import Path
 
-if __name__ == "__main__":
-    run()
+import streamlit as st
+
+import envcorr.page
+from envcorr.page.headers import fault, middleware
+
+app = st.App(Path(envcorr.page.__file__).with_name("main.py"), middleware=middleware(), on_script_error=fault)

@@ -33,7 +33,7 @@ def page(port: int) -> None:
     import sys
     from importlib.resources import as_file, files
 
-    with as_file(files("envcorr").joinpath("page/main.py")) as script:
+    with as_file(files("envcorr").joinpath("page/server.py")) as script:
         options = [f"--{name}={value}" for name, value in OPTIONS.items()]
         command = [sys.executable, "-m", "streamlit", "run", str(script), f"--server.port={port}", *options]
         click.echo(f"envcorr page: http://localhost:{port}", err=True)

@@ -216,6 +216,49 @@ def test_the_air_and_a_wrong_unit(page):
     assert str(Path.cwd()) not in text
 
 
+def test_every_answer_carries_a_policy(server):
+    with urllib.request.urlopen(server, timeout=5) as answer:
+        policy = answer.headers["content-security-policy"]
+    assert "default-src 'self'" in policy
+    assert "unsafe-eval" not in policy
+    assert "frame-ancestors 'none'" in policy
+
+
+def test_a_shared_link(page):
+    """The link that the page gives leads another session to the same set-up."""
+    open_page(page)
+    choose(page, "begin-room", "Milligram")
+    page.get_by_text("Set-up as a link").click()
+    settle(page)
+    link = page.locator("[data-testid=stCode]").first.inner_text().strip()
+    other = page.context.browser.new_context().new_page()
+    other.goto(f"{page.server}/{link}")
+    other.get_by_text("Milligram bench, workshop office").first.wait_for()
+    other.context.close()
+
+
+def test_accessibility(page):
+    """axe-core finds nothing but faults of Streamlit's own widgets, by name."""
+    from axe_playwright_python.sync_playwright import Axe
+
+    own = {
+        "aria-allowed-attr",
+        "aria-required-children",
+        "nested-interactive",
+        "presentation-role-conflict",
+        "region",
+        "scrollable-region-focusable",
+    }
+    for path in ("", "mass", "level", "air"):
+        open_page(page, path)
+        if not path:
+            choose(page, "begin-room", "Powder")
+            page.get_by_text("Reached once treated").first.wait_for()
+        found = Axe().run(page).response["violations"]
+        mine = [(one["id"], [node["html"][:200] for node in one["nodes"][:2]]) for one in found if one["id"] not in own]
+        assert mine == []
+
+
 def test_only_this_machine_and_nothing_is_told():
     assert OPTIONS["server.address"] == "127.0.0.1"
     assert OPTIONS["browser.gatherUsageStats"] == "false"

@@ -63,6 +63,7 @@ def draw() -> None:
             show.blocks([Verdict("not computed yet", "open", ("Fill in what is marked beside the fields.",))])
             _verdict_below(Verdict("not computed yet", "open"))
             return
+        answer = st.container()  # the answer first, the sliders right below it
         try:
             changed = _what_if(setup)
             result = check_room(changed, draws=DRAWS)
@@ -71,7 +72,8 @@ def draw() -> None:
             return
         document = page.document(result)
         verdict = next(block for block in document if isinstance(block, Verdict))
-        show.blocks([verdict, *sizes(result)])
+        with answer:
+            show.blocks([verdict, *sizes(result)])
         _pictures(changed)
         show.blocks([block for block in document if block is not verdict])
         reports("room", document, result.plan)

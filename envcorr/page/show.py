@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from html import escape
+from typing import Literal
 
 from envcorr.document.blocks import Band, Block, Drawing, Region
 from envcorr.errors import Fault, InputError
@@ -29,7 +30,8 @@ def blocks(several: Sequence[Block]) -> None:
         if isinstance(block, Region | Band | Drawing):
             flush()
             svg = block.svg if isinstance(block, Drawing) else figure(block).decode()
-            st.image(svg[svg.index("<svg") :], width="stretch" if not isinstance(block, Drawing) else "content")
+            width: Literal["stretch", "content"] = "content" if isinstance(block, Drawing) else "stretch"
+            st.image(svg[svg.index("<svg") :], width=width, alt=block.alt)
             line(block.alt, "quiet")
         else:
             waiting.append(block)
