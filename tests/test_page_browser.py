@@ -216,6 +216,30 @@ def test_the_air_and_a_wrong_unit(page):
     assert str(Path.cwd()) not in text
 
 
+def test_the_keyboard_alone(page):
+    """No mouse: by Tab from field to field, to the density of the air (CIPM-2007: 1.1993 kg/m³)."""
+    open_page(page, "air")
+    told = {"air-temperature": "20 °C", "air-pressure": "101325 Pa", "air-humidity": "50 %", "air-co2": "400 ppm"}
+    for key, text in told.items():
+        for _ in range(40):
+            page.keyboard.press("Tab")
+            if page.evaluate("k => !!document.activeElement.closest('.st-key-air-' + k)", key):
+                break
+        page.keyboard.type(text)
+        page.keyboard.press("Enter")
+        settle(page)
+    page.get_by_text("1.1993").first.wait_for()
+
+
+def test_a_million_draws(page):
+    """Long work says that it goes on, and the answer comes."""
+    open_page(page)
+    choose(page, "begin-room", "Powder")
+    page.get_by_text("Reached once treated").first.wait_for()
+    choose(page, "draws", "1 048")
+    page.get_by_text("1048576 draws (JCGM").first.wait_for(timeout=60_000)
+
+
 def test_every_answer_carries_a_policy(server):
     with urllib.request.urlopen(server, timeout=5) as answer:
         policy = answer.headers["content-security-policy"]

@@ -43,7 +43,8 @@ FORM = Form(
     ),
     tuple(REQUIRED),
 )
-DRAWS = 2**14
+DRAWS = (2**14, 2**17, 2**20)
+"""Numbers of draws to choose from; the first is quick enough for the sliders."""
 SLIDERS = ("first", "second")
 
 
@@ -66,7 +67,11 @@ def draw() -> None:
         answer = st.container()  # the answer first, the sliders right below it
         try:
             changed = _what_if(setup)
-            result = check_room(changed, draws=DRAWS)
+            count = st.selectbox(
+                "Draws of the Monte Carlo", DRAWS, key="draws", format_func=lambda n: f"{n:,}".replace(",", " ")
+            )
+            with st.spinner(f"{count} draws", show_time=count > DRAWS[0]):
+                result = check_room(changed, draws=count)
         except (InputError, NotComputedError) as fault:
             show.line(str(fault), "bad")
             return
