@@ -60,7 +60,7 @@ def map_command(
     from pathlib import Path
 
     from envcorr.document import map as page
-    from envcorr.intake.setup_file import read_setup
+    from envcorr.intake.setup_file import full_name, read_setup
     from envcorr.jobs.map import make_curve, make_grid
     from envcorr.render import json_map
     from envcorr.whole_file import check_target
@@ -78,6 +78,7 @@ def map_command(
     }
     if y is None and axes["x_of"] is None and not x.startswith("sensors."):
         axes["x_of"] = "value"
+    x, y = full_name(x), None if y is None else full_name(y)
     across = _request(read, "x", x, axes)
     with progress_bar("points") as progress:
         if y is not None:

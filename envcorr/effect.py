@@ -90,6 +90,8 @@ class Effect:
     ``treatment``: what removes the effect, and ``leaves`` what remains then. ``needed``: "always", or the name of a
     choice that makes the effect indispensable when it is "yes". ``when`` guards the whole effect by choices; where it
     does not apply it is not listed. ``dof`` returns the degrees of freedom of its size, where they are known.
+    ``replaced_by`` names quantities that measure what the effect models: where all are given, and the choices are as
+    ``replaced_when`` says, the measurement stands in its place.
     ``definition``: the difference between mass and measurand, where the measurand is not the mass, is shown with this
     effect.
     """
@@ -107,6 +109,8 @@ class Effect:
     answers: tuple[Answer, ...] = ()
     dof: Function | None = None
     when: Mapping[str, tuple[str, ...]] | None = None
+    replaced_by: tuple[str, ...] = ()
+    replaced_when: Mapping[str, tuple[str, ...]] | None = None
     own: bool = False
     correctable: bool = False
     treatment: str = ""

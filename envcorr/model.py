@@ -101,7 +101,7 @@ def make_plan(
     missing: list[NotAssessed] = []
     checks: list[PlannedCheck] = []
     for effect in catalogue.effects.values():
-        if (only and not only(effect)) or not planner.applies(effect.when):
+        if (only and not only(effect)) or not planner.applies(effect.when) or _is_replaced(effect, planner):
             continue
         try:
             true = planner.pull(effect)
@@ -131,11 +131,17 @@ def _words_that_matter(planner: Planner, needed: set[int], effects: Sequence[Pla
     return names.union(*(when or {} for when in (*taken, *ruled)))
 
 
+def _is_replaced(effect: Effect, planner: Planner) -> bool:
+    """Return whether a measurement stands in the place of an effect's model."""
+    measured = bool(effect.replaced_by) and all(name in planner.given for name in effect.replaced_by)
+    return measured and planner.applies(effect.replaced_when)
+
+
 def _told_only(planner: Planner) -> set[str]:
     """Return the choices on which nothing depends: what they have to say is said."""
     effects = planner.catalogue.effects.values()
     depended = {name for several in planner.catalogue.ways.values() for way in several for name in way.when or {}}
-    depended |= {name for effect in effects for name in (effect.needed, *(effect.when or {}))}
+    depended |= {name for e in effects for name in (e.needed, *(e.when or {}), *(e.replaced_when or {}))}
     return {name for name, choice in planner.catalogue.choices.items() if choice.notes and name not in depended}
 
 
@@ -173,7 +179,7 @@ def _finish(
     used = {leaf.name for leaf, nodes in zip(planner.leaves, reach, strict=True) if nodes}
     words = _words_that_matter(planner, needed, effects)
     unused = [name for name in setup.estimates if name not in used]
-    guards = {name for effect in planner.catalogue.effects.values() for name in effect.when or {}}
+    guards = {name for e in planner.catalogue.effects.values() for name in (*(e.when or {}), *(e.replaced_when or {}))}
     unused += [name for name in setup.choices if name not in words | guards | _told_only(planner)]
     assumed = [a for a in planner.assumed.values() if a.name in (words if a.word else used)]
     return Plan(

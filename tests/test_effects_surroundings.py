@@ -154,6 +154,22 @@ def test_the_room_is_not_counted_twice():
     assert not {"draught", "vibration", "pressure_pulse"} & {found.name for found in here.effects}
 
 
+def test_a_measurement_stands_in_the_place_of_the_models():
+    """A scatter with the source on and off: 35 and 20 µg leave 28.7 µg (by hand), and nothing counts twice."""
+    said = {**DRAUGHT, **LINE, "vibration_velocity_rms": 5e-5, "load_mass": 5e-3}
+    measured = {"balance_scatter_on": 35 * UG, "balance_scatter_off": 20 * UG}
+    for source, left in (
+        (None, set()),
+        ("draught", {"vibration"}),
+        ("vibration", {"draught"}),
+        ("neither", {"draught", "vibration"}),
+    ):
+        found = room(said, measured, balance_scatter_source=source)
+        assert {"draught", "vibration"} & {one.name for one in found.effects} == left
+        assert row(found, "disturbance").u / UG == pytest.approx(28.72, rel=5e-3)
+        assert ("draught.speed" in found.unused) is ("draught" not in left)
+
+
 def test_presets_of_draught():
     said = {name: value for name, value in DRAUGHT.items() if name != "draught_speed"}
     found = room(said, draught_preset="fume hood", draught_direction="down")

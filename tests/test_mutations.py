@@ -72,6 +72,7 @@ repeatability_from = "elsewhere"
 repeatability_readings = 10
 scatter_on = "0.035 mg"
 scatter_off = "0.02 mg"
+scatter_source = "neither"
 nonlinearity = "0.03 mg"
 eccentric_loading = "0.1 mg"
 eccentric_test_load = "100 g"

@@ -6,7 +6,7 @@ import numpy as np
 
 from envcorr.effect import Check, Effect, Way
 from envcorr.estimate import Estimate, Value
-from envcorr.vocabulary import Assumed, Quantity
+from envcorr.vocabulary import Assumed, Choice, Quantity
 
 __all__ = ["EFFECT", "load"]
 
@@ -61,6 +61,20 @@ EFFECT = Effect(
                     source="a variance cannot be negative",
                 ),
             ),
+        ),
+    ),
+    choices=(
+        Choice(
+            "balance.scatter_source",
+            "what was switched on and off",
+            {
+                "draught": "a stream of air: the model of the draught is left out",
+                "vibration": "what shakes the bench: the model of the vibration is left out",
+                "both": "a source of both, or not known: both models are left out",
+                "neither": "something else: both models count beside it",
+            },
+            default="both",
+            source="what is measured beats a model, and nothing counts twice",
         ),
     ),
     treatment="switch off or shield the source",

@@ -58,6 +58,8 @@ EFFECT = Effect(
     load=load,
     # where the repeatability was found with the room as it is, the draught is already in it
     when={"balance.repeatability_from": ("elsewhere",)},
+    replaced_by=("balance.scatter_on", "balance.scatter_off"),
+    replaced_when={"balance.scatter_source": ("draught", "both")},
     treatment="close the shield, move the balance out of the stream, or weigh between its gusts",
     leaves="what passes the shield",
     choices=(

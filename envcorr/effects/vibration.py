@@ -128,6 +128,8 @@ EFFECT = Effect(
     load=load,
     # where the repeatability was found with the room as it is, the vibration is already in it
     when={"balance.repeatability_from": ("elsewhere",)},
+    replaced_by=("balance.scatter_on", "balance.scatter_off"),
+    replaced_when={"balance.scatter_source": ("vibration", "both")},
     treatment="set it on a stone table on a wall or a heavy floor, and choose a slower filter",
     leaves="what the floor itself does below a few hertz",
     choices=(

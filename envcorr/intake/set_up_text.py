@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import tomllib
 from collections.abc import Mapping
 from typing import Any
 
@@ -36,6 +37,10 @@ def to_toml(entries: Mapping[str, str], comment: str = "") -> str:
     sections: dict[str, list[str]] = {"": []}
     for name, text in entries.items():
         section, _, key = name.rpartition(".")
+        if not section and any(other.startswith(f"{name}.") for other in entries):  # the tare's reading, and its air
+            inside = tomllib.loads(f"it = {text}")["it"] if text[:1] == "{" else {"value": text}
+            sections.setdefault(name, []).extend(f"{one} = {in_toml(size)}" for one, size in inside.items())
+            continue
         value = text if text[:1] in ("{", "[", '"', "'") or text in ("true", "false") else in_toml(text)
         sections.setdefault(section, []).append(f"{key} = {value}")
     lines = [f"# {line}" for line in comment.splitlines()]

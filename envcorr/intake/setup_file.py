@@ -24,7 +24,7 @@ from envcorr.propagation import correlation_root
 from envcorr.setup import Correlation, Setup
 from envcorr.vocabulary import MOMENTS, Choice
 
-__all__ = ["REQUIRED", "flat", "parse_setup", "place_of", "read_setup"]
+__all__ = ["REQUIRED", "flat", "full_name", "parse_setup", "place_of", "read_setup"]
 
 REQUIRED = {"target.resolution": '[target] resolution = "0.1 mg"', "load.mass": '[load] mass = "5 g"'}
 """What a room check cannot do without, and how to write it."""
@@ -78,10 +78,13 @@ def flat(mapping: Mapping[str, Any]) -> dict[str, Any]:
     """Return every entry of the tables by its dotted name, as it was written; title and correlations by theirs."""
     found: dict[str, Any] = {}
     for key, value in mapping.items():
-        if isinstance(value, Mapping) and not (key in CATALOGUE.quantities and not _holds_sections(value)):
-            found.update(_entries(key, value))
+        entry, sections = _apart(value) if key in CATALOGUE.quantities else (None, value)
+        if entry is not None:
+            found[key] = entry
+        if isinstance(sections, Mapping):
+            found.update(_entries(key, sections))
         else:
-            found[key] = value
+            found[key] = sections
     return found
 
 
@@ -112,8 +115,12 @@ class _Reader:
                     self.fault("title", f"{shown(value)} is not a text.", 'Write title = "Bay 3".')
             elif key == "correlation":
                 self._correlations(value)
-            elif key in CATALOGUE.quantities and not _holds_sections(value):  # a reading, which has no section
-                self._entry(key, value)
+            elif key in CATALOGUE.quantities:  # a reading, which has no section; that of the tare shares its name
+                entry, sections = _apart(value)
+                if entry is not None:
+                    self._entry(key, entry)
+                for name, raw in _entries(key, sections):
+                    self._entry(name, raw)
             elif isinstance(value, Mapping):
                 for name, raw in _entries(key, value):
                     self._entry(name, raw)
@@ -127,7 +134,7 @@ class _Reader:
         if name in materials.NAMED_BY:
             self.materials[name] = raw
             return
-        name = _full_name(name)
+        name = full_name(name)
         choice = CATALOGUE.choices.get(name)
         if choice is not None:
             self._choice(choice, raw)
@@ -165,8 +172,8 @@ class _Reader:
         effects = where == "target.waived"
         known = list(CATALOGUE.effects) if effects else CATALOGUE.words()
         for name in raw if isinstance(raw, list) else [raw]:
-            if isinstance(name, str) and (name in known or (not effects and CATALOGUE.find(_full_name(name)))):
-                (self.waived if effects else self.improvable).append(name if effects else _full_name(name))
+            if isinstance(name, str) and (name in known or (not effects and CATALOGUE.find(full_name(name)))):
+                (self.waived if effects else self.improvable).append(name if effects else full_name(name))
                 continue
             near = nearest(str(name), known)
             hint = f"Did you mean {near}?" if near else f"Known are {', '.join(known)}."
@@ -196,7 +203,7 @@ class _Reader:
                 example = 'between = ["air.temperature", "air.humidity"], coefficient = -0.5'
                 self.fault("correlation", "needs two quantities and a coefficient.", f"Write {example}.")
                 continue
-            names = [_full_name(str(name)) for name in between]
+            names = [full_name(str(name)) for name in between]
             unknown = [name for name in names if CATALOGUE.find(name) is None]
             coefficient = entry["coefficient"]
             if unknown:
@@ -289,9 +296,15 @@ class _Reader:
             self.faults.extend(error.faults)
 
 
-def _holds_sections(value: Any) -> bool:
-    """Return whether a table is no entry: ``[tare.air]`` is the air at the tare, ``tare = "30 g"`` a reading."""
-    return isinstance(value, Mapping) and not any(key in KEYS for key in value)
+def _apart(value: Any) -> tuple[Any, Mapping[str, Any]]:
+    """Return the entry and the sections that one key holds: ``[tare]`` has a reading, ``[tare.air]`` the air at it."""
+    if not isinstance(value, Mapping):
+        return value, {}
+    entry = {key: one for key, one in value.items() if key in KEYS}
+    sections = {key: one for key, one in value.items() if key not in KEYS}
+    if set(entry) == {"value"}:
+        return entry["value"], sections
+    return entry or None, sections
 
 
 def _entries(section: str, table: Mapping[str, Any]) -> Iterator[tuple[str, Any]]:
@@ -306,7 +319,7 @@ def _entries(section: str, table: Mapping[str, Any]) -> Iterator[tuple[str, Any]
 
 def _is_entry(name: str) -> bool:
     """Return whether a table of this name is an entry with value and spread, rather than a section."""
-    full = _full_name(name)
+    full = full_name(name)
     if CATALOGUE.find(full) is not None or full in CATALOGUE.choices:
         return True
     return name not in _sections()
@@ -320,7 +333,7 @@ def _sections() -> frozenset[str]:
     return frozenset((*heads, *(f"{head}{section}" for head in _HEADS for section in sections)))
 
 
-def _full_name(name: str) -> str:
+def full_name(name: str) -> str:
     """Return the full name of a sensor's shorthand: ``sensors.pressure`` is ``sensors.air.pressure``."""
     head, found, key = name.rpartition("sensors.")
     if found and "." not in key and CATALOGUE.find(f"air.{key}"):
@@ -336,4 +349,4 @@ def _as_written(raw: Any) -> str:
 
 def place_of(name: str) -> Place | None:
     """Return the place of a name as people write it, shorthand included."""
-    return CATALOGUE.find(_full_name(name))
+    return CATALOGUE.find(full_name(name))

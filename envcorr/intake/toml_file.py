@@ -10,6 +10,7 @@ from typing import Any
 from envcorr.errors import Fault, InputError
 from envcorr.intake.entry import KEYS, SPREADS, EntryError
 from envcorr.numerals import quoted
+from envcorr.vocabulary import MOMENTS
 
 __all__ = ["LARGEST_FILE", "read_mapping", "unusable", "with_changes"]
 
@@ -102,7 +103,7 @@ def _put(table: dict[str, Any], path: Sequence[str], value: Any) -> None:
         inner = table.get(key, {})
         if not isinstance(inner, Mapping):
             # a plain value becomes a table when one of its keys is changed
-            if path[-1] not in KEYS:
+            if path[-1] not in KEYS and key not in MOMENTS:  # the tare's reading shares its name with its sections
                 raise EntryError(f"{key} is no section.", "Check the name.")
             inner = {"value": inner}
         copy = dict(inner)
@@ -111,6 +112,10 @@ def _put(table: dict[str, Any], path: Sequence[str], value: Any) -> None:
     if path[-1] in SPREADS and path[-1] not in table:
         for other in (*SPREADS, "k", "shape", "dof"):
             table.pop(other, None)
+    there = table.get(path[-1])
+    if path[-1] in MOMENTS and isinstance(there, Mapping):  # its sections stay
+        kept = {key: one for key, one in there.items() if key not in KEYS}
+        value = {**kept, **(value if isinstance(value, Mapping) else {"value": value})}
     table[path[-1]] = value
 
 

@@ -14,6 +14,7 @@ from typing import Literal
 from envcorr import units
 from envcorr.errors import Fault, InputError
 from envcorr.estimate import Estimate
+from envcorr.intake.setup_file import full_name
 from envcorr.jobs.scan import Outcome, Scan
 from envcorr.jobs.verdict import Target
 from envcorr.jobs.weighings import Scope, State
@@ -203,6 +204,7 @@ def _given(scan: Scan) -> Iterator[Leaf]:
 def _improvable(scan: Scan, names: Sequence[str]) -> tuple[Leaf, ...]:
     rows = {leaf.name: leaf for leaf in _given(scan)}
     faults: list[Fault] = []
+    names = [full_name(name) for name in names]
     for name in names:
         try:
             scan.given(name)
