@@ -11,6 +11,9 @@ import click
 from envcorr.cli_tools import emit_blocks, emit_json, json_option
 
 if TYPE_CHECKING:
+    from pathlib import Path
+
+    from envcorr.document.blocks import Block
     from envcorr.intake.level_entry import Foot, Vial
     from envcorr.jobs.level import Observed, Task
     from envcorr.setup import Setup
@@ -77,11 +80,7 @@ def level(ctx: click.Context, /, *, strict: bool, as_json: bool, **given: Any) -
         with whole_file(Path(given["diagram"])) as part:
             part.write_text(drawing.svg, encoding="utf-8")
     if given["report_file"]:
-        from envcorr.render import html, pdf
-
-        data = pdf.render(blocks) if given["report_file"].lower().endswith(".pdf") else html.render(blocks).encode()
-        with whole_file(Path(given["report_file"])) as part:
-            part.write_bytes(data)
+        _report(Path(given["report_file"]), blocks, given)
     if as_json:
         from envcorr.render import json_level
 
@@ -90,6 +89,24 @@ def level(ctx: click.Context, /, *, strict: bool, as_json: bool, **given: Any) -
         emit_blocks(blocks)
     if strict and result.verdict and result.verdict != "level enough":
         ctx.exit(3)
+
+
+def _report(path: Path, page: Sequence[Block], given: dict[str, Any]) -> None:
+    from envcorr.document.report import short_report
+    from envcorr.render import html, pdf
+    from envcorr.whole_file import whole_file
+
+    apart = ("diagram", "report_file", "force")
+    told = {f"--{name.replace('_', '-')}": value for name, value in given.items() if value and name not in apart}
+    inputs = {name: "; ".join(value) if isinstance(value, tuple) else str(value) for name, value in told.items()}
+    methods = (
+        "The balance feels the cosine of its tilt: cos B/cos A - 1, two axes composed by their tangents (geometry).",
+        "Guard band: JCGM 106:2012, 8.3, one-sided, 1.6449 u. Probability: Monte Carlo, JCGM 101:2008.",
+    )
+    blocks = short_report(page, inputs, methods)
+    data = pdf.render(blocks) if path.suffix.lower() == ".pdf" else html.render(blocks).encode()
+    with whole_file(path) as part:
+        part.write_bytes(data)
 
 
 def _read_setup(path: str | None) -> Setup:

@@ -99,6 +99,35 @@ def test_pdf(command, tmp_path):
     assert len(reader.pages) <= 3
 
 
+def test_a_level_has_its_report_too(tmp_path):
+    """Inputs as typed, methods, and room to sign; a hostile name of a foot stays text."""
+    feet = ["--foot=<b>#x</b>=0 mm, 0 mm", "--foot=b=100 mm, 0 mm", "--foot=c=0 mm, 100 mm"]
+    command = ["level", "--load=200 g", "--allowed=0.05 mg", "--tilt=1 arcmin right", *feet]
+    tags = Tags(report(command, tmp_path / "a.html").decode())
+    for said in (
+        "<b>#x</b>",
+        "--load",
+        "200 g",
+        "Methods and references",
+        "JCGM 106",
+        "Notices accepted by",
+        "SHA-256",
+    ):
+        assert said in tags.text
+    assert not any(tag == "b" for tag, _ in tags.found)
+    assert report(command, tmp_path / "b.html") == (tmp_path / "a.html").read_bytes()
+    report(command, tmp_path / "a.pdf")
+    reader = PdfReader(tmp_path / "a.pdf")
+    assert reader.trailer["/Root"]["/MarkInfo"]["/Marked"]
+    assert len(reader.pages) <= 2
+
+
+def test_a_short_report_has_two_pages(tmp_path):
+    reading = ["mass", "--reading=5.0000 g", "--density=1050 kg/m³", "--temperature=21 °C"]
+    report([*reading, "--pressure=990 hPa", "--humidity=45 %"], tmp_path / "a.pdf")
+    assert len(PdfReader(tmp_path / "a.pdf").pages) <= 2
+
+
 def test_the_digest_is_that_of_what_was_given(tmp_path):
     (tmp_path / "bay.toml").write_text(SETUP, encoding="utf-8")
     command = ["room", str(tmp_path / "bay.toml")]

@@ -2,21 +2,37 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+import hashlib
+import json
+from collections.abc import Mapping, Sequence
 
 import envcorr
 from envcorr.document.blocks import Block, Column, Group, Heading, Item, Listing, Signature, Table, Text
 from envcorr.document.wording import capital, estimate_text
 from envcorr.plan import Plan
 
-__all__ = ["report"]
+__all__ = ["report", "short_report"]
 
 LINES = ("Computed by, date", "Notices accepted by, date", "because")
 
 
 def report(page: Sequence[Block], plan: Plan) -> list[Block]:
     """Return a page with the inputs as understood, methods with references, version, hash, and room for signatures."""
-    return [*page, *_given(plan), *_methods(plan), *_identity(plan)]
+    return [*page, *_given(plan), *_methods(plan), *_signed(plan.setup.digest)]
+
+
+def short_report(page: Sequence[Block], inputs: Mapping[str, str], methods: Sequence[str]) -> list[Block]:
+    """Return a page that has no set-up behind it with its inputs as typed, methods, version, hash, and signatures."""
+    rows = tuple((name, text) for name, text in inputs.items())
+    digest = hashlib.sha256(json.dumps(sorted(inputs.items())).encode()).hexdigest()
+    return [
+        *page,
+        Heading("What was given"),
+        Table((Column("Name"), Column("as given")), (Group(rows),)),
+        Heading("Methods and references"),
+        *(Text(method) for method in methods),
+        *_signed(digest),
+    ]
 
 
 def _given(plan: Plan) -> list[Block]:
@@ -47,6 +63,6 @@ def _methods(plan: Plan) -> list[Block]:
     return [Heading("Methods and references"), Listing(tuple(items)), Text(general)]
 
 
-def _identity(plan: Plan) -> list[Block]:
-    told = f"envcorr {envcorr.__version__}; SHA-256 of what was given: {plan.setup.digest}."
+def _signed(digest: str) -> list[Block]:
+    told = f"envcorr {envcorr.__version__}; SHA-256 of what was given: {digest}."
     return [Heading("Signed"), Signature(LINES), Text(told, quiet=True)]
