@@ -84,7 +84,7 @@ def test_an_error_stands_beside_its_field_in_the_words_of_the_command_line():
 
 
 def test_what_if():
-    """Neutralised by the slider: the surface charge at the smallest that it offers leaves the target within reach."""
+    """Another mass by the slider changes the figures; back to the set-up takes the slider away."""
     test = station()
     test.selectbox(key="what if first").set_value("load.mass").run()
     slider = next(one for one in test.slider if "load.mass" in one.key)
