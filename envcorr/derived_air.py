@@ -182,6 +182,16 @@ _OUTSIDE_OIML = Check(
 )
 
 
+def _less(value: Value, change: Value) -> tuple[float, float]:
+    """Return the slopes of a value less a change."""
+    return 1.0, -1.0
+
+
+def _more(value: Value, change: Value) -> tuple[float, float]:
+    """Return the slopes of a value plus a change."""
+    return 1.0, 1.0
+
+
 # Vapour, from whatever was stated ------------------------------------------------------------------------------
 
 
@@ -218,16 +228,19 @@ WAYS: tuple[Way, ...] = (
         "tare.air.pressure",
         lambda air_pressure, cycle_pressure_change: air_pressure - cycle_pressure_change,
         "the present one less the change within the weighing",
+        slopes=_less,
     ),
     Way(
         "tare.air.temperature",
         lambda air_temperature, cycle_temperature_change: air_temperature - cycle_temperature_change,
         "the present one less the change within the weighing",
+        slopes=_less,
     ),
     Way(
         "tare.air.humidity",
         lambda air_humidity, cycle_humidity_change: air_humidity - cycle_humidity_change,
         "the present one less the change within the weighing",
+        slopes=_less,
     ),
     Way(
         "adjusted.air.pressure",
@@ -245,12 +258,14 @@ WAYS: tuple[Way, ...] = (
         "adjusted.air.pressure",
         lambda air_pressure, adjusted_pressure_change: air_pressure + adjusted_pressure_change,
         "about the present one",
+        slopes=_more,
         at_best=("air_pressure",),
     ),
     Way(
         "adjusted.air.temperature",
         lambda air_temperature, adjusted_temperature_change: air_temperature + adjusted_temperature_change,
         "about the present one",
+        slopes=_more,
         at_best=("air_temperature",),
     ),
     Way(

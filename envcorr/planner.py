@@ -31,6 +31,10 @@ def _add(value: Value, error: Value) -> Value:
     return value + error
 
 
+def _add_slopes(value: Value, error: Value) -> tuple[float, float]:
+    return 1.0, 1.0
+
+
 class Planner:
     """Builds the node list of one plan; every quantity is resolved once a world."""
 
@@ -124,12 +128,12 @@ class Planner:
         if known:
             sensor = self._sensor(place)
             if sensor is not None:
-                return self.call(_add, (self.resolve(place), sensor))
+                return self.call(_add, (self.resolve(place), sensor), _add_slopes)
         estimate = self.given.get(place.name)
         if estimate is not None:
             node = self._leaf(place, estimate, "given", known)
             sensor = self._sensor(place) if self.read and estimate.is_exact and not known else None
-            return node if sensor is None else self.call(_add, (node, sensor))
+            return node if sensor is None else self.call(_add, (node, sensor), _add_slopes)
         if place.moment:
             return self._resolve_moment(place, known)
         return self._resolve_present(place, known)
