@@ -52,7 +52,8 @@ class Way:
     ``when`` maps the names of choices to the words for which the way may be used. The parameters listed in
     ``at_best`` are supplied at their best estimates, never drawn. ``only_if`` sees the best estimates that were
     given (name to SI value) and may decline. ``slopes`` returns the partial derivatives of ``function`` in its
-    parameters, in order, from the same arguments; without it they are found by differences.
+    parameters, in order, from the same arguments; without it they are found by differences. ``band``: what it gives is
+    a band only, so that an effect which rests on it is not corrected for.
     """
 
     gives: str
@@ -64,13 +65,15 @@ class Way:
     at_best: tuple[str, ...] = ()
     checks: tuple[Check, ...] = ()
     slopes: Function | None = None
+    band: bool = False
 
 
 @dataclass(frozen=True, slots=True)
 class Answer:
     """A figure of its own that an effect can give (the largest tolerable charge), of a kind of unit.
 
-    ``function`` takes quantities at their best estimates; where one is lacking the answer is left out.
+    ``function`` takes quantities at their best estimates; where one is lacking, or nothing finite comes of them,
+    the answer is left out.
     """
 
     label: str
@@ -86,7 +89,8 @@ class Effect:
     relative change of the gain at one reading: the model evaluates it at the loaded and at the tare reading. An
     effect has one of the two, or both (buoyancy acts on the load and, through the adjusting weight, on the gain).
 
-    ``own``: the balance's own part, not the surroundings'. ``correctable``: a correction can be computed.
+    ``own``: the balance's own part, not the surroundings'. ``correctable``: a correction can be computed (but
+    where it rests on a way that gives a band).
     ``treatment``: what removes the effect, and ``leaves`` what remains then. ``needed``: "always", or the name of a
     choice that makes the effect indispensable when it is "yes". ``when`` guards the whole effect by choices; where it
     does not apply it is not listed. ``dof`` returns the degrees of freedom of its size, where they are known.

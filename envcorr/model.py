@@ -105,11 +105,12 @@ def make_plan(
             continue
         try:
             true = planner.pull(effect)
-            known = planner.pull(effect, known=True) if effect.correctable else None
+            roots = [i for i in (true.load, true.gain, true.gain_at_tare) if i is not None]
+            correctable = effect.correctable and not planner.rests_on_band(roots)
+            known = planner.pull(effect, known=True) if correctable else None
         except LacksError:
             missing.append(NotAssessed(effect, planner.lacks(effect)))
             continue
-        roots = [i for i in (true.load, true.gain, true.gain_at_tare) if i is not None]
         answers = [(answer, planner.inputs(answer.function)) for answer in effect.answers]
         found = tuple((answer, inputs) for answer, inputs in answers if inputs is not None)
         dof = planner.inputs(effect.dof) if effect.dof else None

@@ -113,6 +113,11 @@ class PlannedEffect:
     answers: tuple[tuple[Answer, tuple[int, ...]], ...] = ()
     dof: tuple[int, ...] | None = None
 
+    @property
+    def correctable(self) -> bool:
+        """Whether a correction takes it out."""
+        return self.known is not None
+
 
 @dataclass(frozen=True, slots=True)
 class PlannedCheck:

@@ -299,8 +299,8 @@ class Planner:
                     names.update(dict.fromkeys(lack.names))
         return tuple(names)
 
-    def ways_of(self, node_roots: Sequence[int]) -> tuple[str, ...]:
-        """Return the labels of the ways on which the nodes rest."""
+    def _ways_under(self, node_roots: Sequence[int]) -> list[tuple[Way, Place]]:
+        """Return the ways on which the nodes rest, with the places that they gave."""
         functions: set[int] = set()
         pending = list(node_roots)
         seen: set[int] = set()
@@ -313,15 +313,22 @@ class Planner:
             if node.function is not None:
                 functions.add(id(node.function))
             pending.extend(node.inputs)
+        used = [(way, place) for found in self.ways_used.values() for way, place, _ in found]
+        return [(way, place) for way, place in used if id(way.function) in functions]
+
+    def rests_on_band(self, node_roots: Sequence[int]) -> bool:
+        """Return whether something on which the nodes rest is known as a band only."""
+        return any(way.band for way, _ in self._ways_under(node_roots))
+
+    def ways_of(self, node_roots: Sequence[int]) -> tuple[str, ...]:
+        """Return the labels of the ways on which the nodes rest."""
         labels: dict[str, None] = {}
-        for used in self.ways_used.values():
-            for way, place, _ in used:
-                if id(way.function) in functions:
-                    quantity = self.catalogue.find(way.gives)
-                    name = quantity.label if quantity else way.gives
-                    if place.moment and quantity:
-                        name = Place(place.moment, quantity.quantity).label
-                    labels[f"{name}: {way.label}"] = None
+        for way, place in self._ways_under(node_roots):
+            quantity = self.catalogue.find(way.gives)
+            name = quantity.label if quantity else way.gives
+            if place.moment and quantity:
+                name = Place(place.moment, quantity.quantity).label
+            labels[f"{name}: {way.label}"] = None
         return tuple(labels)
 
     def way_checks(self) -> list[PlannedCheck]:

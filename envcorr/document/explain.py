@@ -268,7 +268,9 @@ def _effect(effect: Effect, catalogue: Catalogue) -> list[Block]:
     figures = [Figure(words[where], text) for where, text in found.items()]
     figures.append(Figure("Source", effect.source))
     figures.append(Figure("Counts as", "the balance's own part" if effect.own else "surroundings"))
-    figures.append(Figure("Can be corrected for", "yes" if effect.correctable else "no, only bounded"))
+    bands = [f"but only bounded by {way.label}" for way in effect.ways if way.band]
+    able = ", ".join(["yes", *bands]) if effect.correctable else "no, only bounded"
+    figures.append(Figure("Can be corrected for", able))
     if effect.treatment:
         leaves = f"; leaves {effect.leaves}" if effect.leaves else ""
         figures.append(Figure("Can be removed", f"{effect.treatment}{leaves}"))

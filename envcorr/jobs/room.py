@@ -274,7 +274,7 @@ def _effect_rows(run: Run, target: Target, basis: State, decisive: Scope) -> tup
                     if scope == "whole" or not effect.own
                 },
                 e95_without=ratio * largest_with(run.some_result.error(basis, others), probability),
-                correction=-float(known.effect(i, defines=effect.definition)) if effect.correctable else None,
+                correction=-float(known.effect(i, defines=effect.definition)) if planned.correctable else None,
                 treatment=effect.treatment,
                 leaves=effect.leaves,
                 ways=planned.ways,
@@ -291,10 +291,8 @@ def _effect_rows(run: Run, target: Target, basis: State, decisive: Scope) -> tup
 
 def _answers(plan: Plan, planned: PlannedEffect) -> tuple[AnswerRow, ...]:
     centres = plan.centres()
-    return tuple(
-        AnswerRow(answer.label, answer.kind, float(answer.function(*[centres[i] for i in inputs])))
-        for answer, inputs in planned.answers
-    )
+    found = [(answer, float(answer.function(*[centres[i] for i in inputs]))) for answer, inputs in planned.answers]
+    return tuple(AnswerRow(answer.label, answer.kind, value) for answer, value in found if math.isfinite(value))
 
 
 def _quantity_rows(

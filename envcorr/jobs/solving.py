@@ -91,7 +91,7 @@ def plan_reading(setup: Setup, reading: Value, like: Plan | None = None) -> Plan
 
 def correctable(plan: Plan) -> list[int]:
     """Return which of the plan's effects a correction takes out."""
-    return [i for i, planned in enumerate(plan.effects) if planned.effect.correctable]
+    return [i for i, planned in enumerate(plan.effects) if planned.correctable]
 
 
 def mass_row(plan: Plan) -> int:
