@@ -82,8 +82,14 @@ class Scan:
         return Outcome(errors, inside, all(share >= self.target.probability for share in inside.values()))
 
     def passes(self, changes: Mapping[str, Estimate]) -> bool:
-        """Return whether the total passes with some quantities otherwise; less work than :meth:`outcome`."""
-        run = self._changed(changes)
+        """Return whether the total passes with some quantities otherwise; where the model has no answer it does not.
+
+        Less work than :meth:`outcome`.
+        """
+        try:
+            run = self._changed(changes)
+        except NotComputedError:
+            return False
         for scope, chosen in self.scopes_of(run.plan).items():
             error = run.result.error(self.state, chosen)
             inside = np.count_nonzero(np.abs(np.broadcast_to(error, (self.size,))) <= self.target.bound(scope))
