@@ -8,6 +8,7 @@ from functools import lru_cache
 from importlib.resources import files
 
 from envcorr.constants import ZERO_CELSIUS
+from envcorr.errors import NotComputedError
 
 __all__ = ["Liquid", "every", "heat_of_vaporisation", "vapour_pressure"]
 
@@ -17,7 +18,7 @@ _COOLPROP = "CoolProp, equation of state"
 
 @dataclass(frozen=True, slots=True)
 class Liquid:
-    """A liquid: molar mass [kg/mol], diffusion volume (a number), flash point [K] or None where it does not burn.
+    """A liquid: molar mass [kg/mol], diffusion volume (a number), flash point [K] or None where none is listed.
 
     Its vapour pressure is CoolProp's, or that of the constants of Antoine's equation; ``heat`` [J/mol] goes with these.
     """
@@ -52,20 +53,30 @@ def every() -> dict[str, Liquid]:
 
 
 def vapour_pressure(liquid: Liquid, temperature: float) -> float:
-    """Return the vapour pressure [Pa] at a temperature [K]: slow where it is CoolProp's, so not for draws."""
+    """Return the vapour pressure [Pa] at a temperature [K]: slow where it is CoolProp's, so not for draws.
+
+    Raises NotComputedError where CoolProp has no answer.
+    """
     if liquid.antoine is not None:
         a, b, c = liquid.antoine
         return float(_MMHG * 10 ** (a - b / (c + temperature - ZERO_CELSIUS.value)))
-    from CoolProp.CoolProp import PropsSI
-
-    return float(PropsSI("P", "T", temperature, "Q", 1, liquid.coolprop))
+    return _saturated(liquid, "P", temperature, 1)
 
 
 def heat_of_vaporisation(liquid: Liquid, temperature: float) -> float:
-    """Return the heat of vaporisation [J/mol] at a temperature [K]."""
+    """Return the heat of vaporisation [J/mol] at a temperature [K]. Raises NotComputedError as above."""
     if liquid.antoine is not None:
         return liquid.heat
+    return _saturated(liquid, "Hmolar", temperature, 1) - _saturated(liquid, "Hmolar", temperature, 0)
+
+
+def _saturated(liquid: Liquid, what: str, temperature: float, vapour: int) -> float:
     from CoolProp.CoolProp import PropsSI
 
-    steam, fluid = (PropsSI("Hmolar", "T", temperature, "Q", q, liquid.coolprop) for q in (1, 0))
-    return float(steam - fluid)
+    try:
+        return float(PropsSI(what, "T", temperature, "Q", vapour, liquid.coolprop))
+    except ValueError as error:
+        raise NotComputedError(
+            f"CoolProp has no vapour pressure of {liquid.name} at {temperature - ZERO_CELSIUS.value:.3g} °C: {error}. "
+            "Check the temperature, or give a measured rate instead of the liquid."
+        ) from error

@@ -1,4 +1,4 @@
-"""Gravity, magnetism, draught, pulse, vibration and evaporation in a room check, by hand and by their traps."""
+"""Gravity, magnetism, draught, pulse and vibration in a room check, by hand and by their traps."""
 
 from __future__ import annotations
 
@@ -239,56 +239,6 @@ def test_a_criterion():
     bands = [10 ** (k / 10) for k in range(20)]
     squares = sum((2 * math.pi * f * 12.7e-6) ** 2 / (1 + (f / 0.5) ** 4) for f in bands)
     assert found.u == pytest.approx(0.1 * math.sqrt(squares) / 9.80665, rel=5e-3)
-
-
-# Evaporation ---------------------------------------------------------------------------------------------------------
-
-
-def test_a_measured_rate():
-    """0.4 mg/min for 30 s: -0.2 mg, and corrected for."""
-    found = room(evaporation_rate=0.4e-6 / 60, evaporation_open_time=30.0)
-    shift = row(found, "evaporation")
-    assert shift.mean_error / MG == pytest.approx(-0.2, rel=1e-9)
-    assert shift.correction / MG == pytest.approx(0.2, rel=1e-9)
-    answers = {one.label: one.value for one in shift.answers}
-    assert answers["longest time to stand open for this target"] == pytest.approx(60 * 0.05 / 0.4)
-    assert "t = 0" in sentences(found)
-
-
-def test_a_vial_of_acetone():
-    """By hand, isothermal: D p M/(R T L) ln(p/(p - pv)) pi a²/4 = 0.90 mg/min; its surface some kelvin colder: less."""
-    said = {
-        "load_density": 790.0,
-        "load_density_kind": "liquid",
-        "evaporation_liquid": "acetone",
-        "evaporation_opening": 10e-3,
-        "evaporation_depth": 35e-3,
-        "evaporation_open_time": 60.0,
-        "evaporation_factor": 1.0,
-    }
-    loss = -row(room(said), "evaporation").mean_error / MG
-    assert 0.4 < loss < 0.85
-    assert "burns" in sentences(room(said))
-    deeper = -row(room(said, evaporation_depth=75e-3), "evaporation").mean_error / MG
-    assert loss * 38.9 / 78.9 < deeper < 0.9 * 38.9 / 78.9  # by the path, and with less of the cooling
-    water = room({**said, "evaporation_liquid": "water"}, air_humidity=0.999)
-    assert abs(row(water, "evaporation").mean_error) < 0.002 * MG  # nothing leaves into moist air
-    assert "burns" not in sentences(water)
-
-
-def test_vapour_in_the_headspace():
-    """Acetone at 20 °C, 24.66 kPa of 101.3: 0.2434 x 1.2 x 100 mL less the liquid's 6.33 mL: -27.4 mg (by hand)."""
-    found = room(
-        load_density=790.0,
-        load_density_kind="liquid",
-        evaporation_liquid="acetone",
-        headspace_saturation=1.0,
-        container_inner_volume=100e-6,
-        air_density=1.2,
-        container_mass=50e-3,
-        container_density=2230.0,
-    )
-    assert row(found, "headspace_vapour").mean_error / MG == pytest.approx(-27.35, abs=0.15)
 
 
 # All of it -----------------------------------------------------------------------------------------------------------

@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 from envcorr import liquids
-from envcorr.effect import Effect, Way
+from envcorr.effect import Effect
 from envcorr.estimate import Estimate, Value
+from envcorr.laws import evaporation
 from envcorr.vocabulary import Assumed, Quantity
 
 __all__ = ["EFFECT", "load"]
@@ -12,7 +13,8 @@ __all__ = ["EFFECT", "load"]
 
 def load(
     headspace_saturation: Value,
-    headspace_vapour_pressure: Value,
+    evaporation_drawn_pressure: Value,
+    evaporation_far_pressure: Value,
     air_pressure: Value,
     air_density: Value,
     container_inner_volume: Value,
@@ -21,10 +23,10 @@ def load(
     """Return the weight of the air that the vapour has driven out [kg], negative.
 
     The vapour itself is part of the liquid that was poured; it takes the place of as much air, by its share of the
-    pressure, in what the liquid leaves empty.
+    pressure, in what the liquid leaves empty. Of water the room's air brings a part along.
     """
-    share = headspace_saturation * headspace_vapour_pressure / air_pressure
-    return -share * air_density * (container_inner_volume - load_volume)
+    full = evaporation.driven_out(evaporation_drawn_pressure, evaporation_far_pressure, air_pressure)
+    return -headspace_saturation * full * air_density * (container_inner_volume - load_volume)
 
 
 EFFECT = Effect(
@@ -33,7 +35,6 @@ EFFECT = Effect(
     help="A vessel that was tared full of air and then holds a volatile liquid loses air that its vapour drives out.",
     source="ideal gases at one pressure (Dalton)",
     load=load,
-    correctable=True,
     # a vessel kept shut loses nothing
     when={"container.closed": ("never", "each time"), "evaporation.liquid": tuple(liquids.every())},
     treatment="tare the vessel with a trace of the liquid in it, and close it",
@@ -48,24 +49,6 @@ EFFECT = Effect(
             high=1.0,
             default=Assumed(Estimate(0.5, "rectangular", 0.5), "anywhere between none and all (judgement)"),
             lessens_to_zero=True,
-        ),
-        Quantity(
-            "headspace.vapour_pressure",
-            "pressure",
-            "vapour pressure in the headspace",
-            "Of the liquid, at the temperature of the air; of water only what the room's humidity lacks.",
-            low=0.0,
-            internal=True,
-        ),
-    ),
-    ways=(
-        Way(
-            "headspace.vapour_pressure",
-            lambda evaporation_vapour_pressure, evaporation_far_pressure: (
-                evaporation_vapour_pressure - evaporation_far_pressure
-            ),
-            "the liquid's, less what the room's air holds",
-            when={"evaporation.liquid": tuple(liquids.every())},
         ),
     ),
     test="Weigh the closed vessel with the liquid, open it for a minute and close it, and weigh again.",
